@@ -25,14 +25,11 @@ export const line = (max: number, what = 'Type something here.') =>
   z
     .string()
     .transform((text) => text.normalize('NFC').trim())
-    // biome-ignore lint: the point is to refuse control characters
     .refine(
       (text) => !/[\u0000-\u001f\u007f-\u009f\u2028\u2029\u200e\u200f\u061c\u202a-\u202e\u2066-\u2069]/.test(text),
       'Leave out line breaks and invisible control characters.',
     )
-    @@
-      'A character in this text is damaged. Type it again.',
-    )
+    .refine((text) => !/[\ud800-\udfff]/u.test(text), 'A character in this text is damaged. Type it again.')
     .pipe(z.string().min(1, what).max(max, `Use at most ${max} characters.`))
 export const optionalLine = (max: number) => z.union([z.literal('').transform(() => null), z.null(), line(max)])
 /** Several lines of plain text. */
