@@ -25,7 +25,7 @@ class Refusal extends Error {
 
 const SPACE = /[\t\n\r ]*/y
 const NUMBER = /-?(?:0|[1-9][0-9]*)(?:\.[0-9]+)?(?:[eE][+-]?[0-9]+)?/y
-// eslint-disable-next-line no-control-regex -- RFC 8259 section 7 names exactly these as forbidden unescaped.
+// RFC 8259 section 7 forbids exactly these characters unescaped.
 const STRING = /"(?:[^"\\\u0000-\u001f]|\\(?:["\\/bfnrt]|u[0-9a-fA-F]{4}))*"/y
 
 /**

@@ -1,0 +1,170 @@
+import { utf8 } from '../bytes/bytes.ts'
+import { toHex } from '../bytes/hex.ts'
+import { fail, ok, type Failure, type Result } from '../bytes/result.ts'
+import { MAX_ENTRANTS, MAX_TICKETS, MAX_TICKETS_EACH } from './limits.ts'
+
+/** `entries.csv` (PROTOCOL section 9): a header, then a line for each leaf in order. */
+
+const HEADER = utf8('tickets,entry_commit\n')
+const LF = 0x0a
+const COMMA = 0x2c
+
+/** Why bytes are not an `entries.csv`. `at` of the failure names the line, from 1. */
+export type EntriesCode =
+  | 'header-wrong'
+  | 'line-wrong'
+  | 'tickets-out-of-range'
+  | 'total-out-of-range'
+  | 'too-many'
+  | 'empty'
+  | 'unfinished-line'
+
+/** The header line's bytes. */
+export function entriesHeader(): Uint8Array {
+  return HEADER.slice()
+}
+
+/** One line of text for a leaf, with its line feed. `entryCommit` has 32 bytes. */
+export function entriesLine(tickets: number, entryCommit: Uint8Array): string {
+  return `${tickets},${toHex(entryCommit)}\n`
+}
+
+/** The whole file for leaves in their order; `entryCommits` holds 32 bytes a leaf. */
+export function writeEntries(tickets: ArrayLike<number>, entryCommits: Uint8Array): Uint8Array {
+  const parts: string[] = ['tickets,entry_commit\n']
+  for (let i = 0; i < tickets.length; i += 1) {
+    parts.push(entriesLine(tickets[i] as number, entryCommits.subarray(i * 32, (i + 1) * 32)))
+  }
+  return utf8(parts.join(''))
+}
+
+/** Receives a leaf. `entryCommit` is the parser's own buffer: copy what must stay. */
+export type LeafSink = (tickets: number, entryCommit: Uint8Array) => void
+
+/**
+ * Parses `entries.csv` as it streams by, byte by byte: decimal without leading zeros, a comma, 64 lower-case hex
+ * digits, a line feed, also after the last line. Counts are 1 to 2^32 − 1, the total at most 2^53 − 1, the leaves at
+ * most 2,000,000. Feed chunks in order; the first failure stands and everything later is ignored.
+ */
+export class EntriesParser {
+  private readonly commit = new Uint8Array(32)
+  private failure: Failure<EntriesCode> | null = null
+  private headerRead = 0
+  private line = 2
+  private tickets = 0
+  private digits = 0
+  /** Hex digits read in this line, or -1 while before the comma. */
+  private nibbles = -1
+  private total = 0
+
+  constructor(private readonly sink: LeafSink) {}
+
+  /** Takes the next bytes; the first failure so far, or null. */
+  push(chunk: Uint8Array): Failure<EntriesCode> | null {
+    for (let i = 0; i < chunk.length && this.failure === null; i += 1) this.byte(chunk[i] as number)
+    return this.failure
+  }
+
+  /** Ends the file: how many leaves and tickets passed, or the first failure. */
+  end(): Result<{ readonly count: number; readonly tickets: number }, Failure<EntriesCode>> {
+    if (this.failure === null) {
+      if (this.headerRead < HEADER.length) this.refuse('header-wrong', 'The file does not begin with its header.')
+      else if (this.digits > 0) this.refuse('unfinished-line', 'The last line has no line feed.')
+      else if (this.line === 2) this.refuse('empty', 'The file has no entry.')
+    }
+    return this.failure === null
+      ? ok({ count: this.line - 2, tickets: this.total })
+      : { ok: false, error: this.failure }
+  }
+
+  private byte(byte: number): void {
+    if (this.headerRead < HEADER.length) {
+      if (byte !== HEADER[this.headerRead]) this.refuse('header-wrong', 'The first line is not tickets,entry_commit.')
+      this.headerRead += 1
+    } else if (this.nibbles < 0) this.inTickets(byte)
+    else this.inCommit(byte)
+  }
+
+  private inTickets(byte: number): void {
+    if (byte === COMMA && this.digits > 0) {
+      this.nibbles = 0
+      return
+    }
+    if (byte < 0x30 || byte > 0x39) return this.refuse('line-wrong', 'A decimal number and a comma were expected.')
+    if (byte === 0x30 && this.digits === 0) {
+      return this.refuse('tickets-out-of-range', 'A count is at least 1 and has no leading zero.')
+    }
+    this.tickets = this.tickets * 10 + byte - 0x30
+    this.digits += 1
+    if (this.tickets > MAX_TICKETS_EACH) this.refuse('tickets-out-of-range', 'An entrant has at most 2^32 − 1 tickets.')
+  }
+
+  private inCommit(byte: number): void {
+    if (this.nibbles === 64) {
+      if (byte !== LF) return this.refuse('line-wrong', 'A line feed was expected after 64 hex digits.')
+      return this.leaf()
+    }
+    const value = byte >= 0x30 && byte <= 0x39 ? byte - 0x30 : byte >= 0x61 && byte <= 0x66 ? byte - 0x57 : -1
+    if (value < 0) return this.refuse('line-wrong', '64 lower-case hex digits were expected.')
+    const at = this.nibbles >> 1
+    this.commit[at] = this.nibbles % 2 === 0 ? value << 4 : (this.commit[at] as number) | value
+    this.nibbles += 1
+  }
+
+  private leaf(): void {
+    this.total += this.tickets
+    if (this.total > MAX_TICKETS) return this.refuse('total-out-of-range', 'All tickets together pass 2^53 − 1.')
+    if (this.line - 2 >= MAX_ENTRANTS) return this.refuse('too-many', `A draw has at most ${MAX_ENTRANTS} entrants.`)
+    this.sink(this.tickets, this.commit)
+    this.line += 1
+    this.tickets = 0
+    this.digits = 0
+    this.nibbles = -1
+  }
+
+  private refuse(code: EntriesCode, message: string): void {
+    const line = this.headerRead < HEADER.length ? 1 : this.line
+    this.failure = fail(code, `line ${line}`, message).error
+  }
+}
+
+/** Leaves of a parsed `entries.csv`: 32 bytes a leaf in `entryCommits`. */
+export interface Entries {
+  readonly tickets: Float64Array
+  readonly entryCommits: Uint8Array
+  readonly total: number
+}
+
+/** Parses a whole `entries.csv` in memory; the rules of `EntriesParser`. */
+export function parseEntries(bytes: Uint8Array): Result<Entries, Failure<EntriesCode>> {
+  // A line has at least 1 digit, a comma, 64 hex digits and a line feed.
+  const room = Math.min(MAX_ENTRANTS, Math.ceil(bytes.length / 67))
+  const tickets = new Float64Array(room)
+  const entryCommits = new Uint8Array(room * 32)
+  let count = 0
+  const parser = new EntriesParser((held, commit) => {
+    tickets[count] = held
+    entryCommits.set(commit, count * 32)
+    count += 1
+  })
+  parser.push(bytes)
+  const end = parser.end()
+  if (!end.ok) return end
+  const leaves = end.value.count
+  return ok({
+    tickets: tickets.subarray(0, leaves),
+    entryCommits: entryCommits.subarray(0, leaves * 32),
+    total: end.value.tickets,
+  })
+}
+
+/** Index of the first leaf whose commitment stood before (section 1: no two are equal), or null. 32 bytes a leaf. */
+export function firstDuplicateCommit(entryCommits: Uint8Array): number | null {
+  const seen = new Set<string>()
+  for (let leaf = 0; leaf * 32 < entryCommits.length; leaf += 1) {
+    const key = String.fromCharCode(...entryCommits.subarray(leaf * 32, leaf * 32 + 32))
+    if (seen.has(key)) return leaf
+    seen.add(key)
+  }
+  return null
+}
