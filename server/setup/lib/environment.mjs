@@ -1,0 +1,53 @@
+// @ts-check
+
+/** @typedef {import('./ports.mjs').Ports} Ports */
+
+/** What npm start chooses by itself; set from outside they mean services of one's own, which it does not run. */
+const OF_ONE_S_OWN = [
+  'EVENPENNY_DATABASE_URL',
+  'EVENPENNY_S3_ENDPOINT',
+  'EVENPENNY_SMTP_URL',
+  'EVENPENNY_BEACON_RELAYS',
+]
+
+/**
+ * The sentences for an environment that names services of one's own; null for one that does not.
+ * @param {NodeJS.ProcessEnv} env
+ * @returns {string | null}
+ */
+export function ownServicesProblem(env) {
+  const set = OF_ONE_S_OWN.filter((name) => env[name])
+  if (set.length === 0) return null
+  return (
+    `${set.join(', ')} ${set.length === 1 ? 'is' : 'are'} set, but npm start runs everything on this machine with a ` +
+    'database and services of its own. For real services start the processes one by one, as docs/production.md says; ' +
+    `for npm start unset ${set.length === 1 ? 'it' : 'them'} first.`
+  )
+}
+
+/**
+ * The environment of the site, the worker, the fakes and their commands on one machine.
+ * @param {object} options
+ * @param {NodeJS.ProcessEnv} options.base what they get besides; variables that npm adds for its scripts are left out
+ * @param {string} options.data
+ * @param {Ports} options.ports
+ * @param {string} options.databaseUrl
+ * @param {boolean} options.dev
+ * @returns {NodeJS.ProcessEnv}
+ */
+export function localEnvironment({ base, data, ports, databaseUrl, dev }) {
+  const kept = Object.entries(base).filter(([name]) => !/^npm_/i.test(name) && !name.startsWith('PG'))
+  return {
+    ...Object.fromEntries(kept),
+    NODE_ENV: dev ? 'development' : 'production',
+    EVENPENNY_LOCAL: 'yes',
+    ...(dev ? { EVENPENNY_DEV: 'yes' } : {}),
+    EVENPENNY_DATA: data,
+    EVENPENNY_DATABASE_URL: databaseUrl,
+    EVENPENNY_PORT: String(ports.site),
+    EVENPENNY_FAKE_S3_PORT: String(ports.s3),
+    EVENPENNY_FAKE_SMTP_PORT: String(ports.smtp),
+    EVENPENNY_FAKE_MAIL_PAGE_PORT: String(ports.mailPage),
+    EVENPENNY_FAKE_BEACON_PORT: String(ports.beacon),
+  }
+}
