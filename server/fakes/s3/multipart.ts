@@ -167,16 +167,15 @@ function chosenParts(
       "One or more of the specified parts could not be found. The part may not have been uploaded, or the specified entity tag may not match the part's entity tag.",
     )
   const member = `Checksum${upload.algorithm}`
-  let previous = 0
+  const numbers = listed.map((node) => Number(childText(node, 'PartNumber')))
+  if (numbers.some((number, index) => index > 0 && number <= (numbers[index - 1] ?? 0)))
+    throw new S3Error(
+      'InvalidPartOrder',
+      400,
+      'The list of parts was not in ascending order. Parts must be ordered by part number.',
+    )
   return listed.map((node, index) => {
     const number = Number(childText(node, 'PartNumber'))
-    if (number <= previous)
-      throw new S3Error(
-        'InvalidPartOrder',
-        400,
-        'The list of parts was not in ascending order. Parts must be ordered by part number.',
-      )
-    previous = number
     const part = received.find((candidate) => candidate.number === number)
     if (!part || childText(node, 'ETag')?.replaceAll('"', '') !== part.etag) throw invalid()
     const claimed = childText(node, member)
@@ -217,7 +216,7 @@ async function concatenate(
 export async function completeUpload(call: Call): Promise<void> {
   const bucket = bucketOf(call)
   const { folder, upload, id } = openUpload(call)
-  const document = parseXml((await receiveDocument(call.req, call.authenticated)).text)
+  const document = parseXml((await receiveDocument(call.req, call.authenticated, true)).text)
   const listed = document?.name === 'CompleteMultipartUpload' ? childrenNamed(document, 'Part') : []
   if (listed.length === 0) throw malformedXml()
   const parts = chosenParts(listed, partsIn(folder), upload, call.smallestPart)

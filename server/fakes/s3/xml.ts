@@ -4,11 +4,9 @@ const named: Readonly<Record<string, string>> = { lt: '<', gt: '>', amp: '&', qu
 
 /** Text made safe as XML character data. Control characters that XML 1.0 forbids are written as U+FFFD. */
 export function escapeXml(text: string): string {
-  return (
-    text
-      .replace(/[\u0000-\u0008\u000B\u000C\u000E-\u001F]/g, '\uFFFD')
-      .replace(/[&<>"\r]/g, (c) => ({ '&': '&amp;', '<': '&lt;', '>': '&gt;', '"': '&quot;' })[c] ?? '&#13;')
-  )
+  return text
+    .replace(/[\u0000-\u0008\u000B\u000C\u000E-\u001F]/g, '\uFFFD')
+    .replace(/[&<>"\r]/g, (c) => ({ '&': '&amp;', '<': '&lt;', '>': '&gt;', '"': '&quot;' })[c] ?? '&#13;')
 }
 
 /** One element: a string content is escaped, a list is taken as ready-made children. */
