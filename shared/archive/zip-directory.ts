@@ -28,6 +28,7 @@ export interface DirectoryEntry {
 
 const UTF8_NAMES = 1 << 11
 const DEFLATE_SPEED = 0b110
+const UNIX_TIME = 0x5455
 const MAX_DIRECTORY = 2 ** 20
 
 /**
@@ -191,15 +192,14 @@ function checkEntry(entry: RawEntry): void {
   }
 }
 
-/** Extra fields pass where they only tell a time or an owner; none may change a size or a name. */
+/** The only extra field that passes tells a time ("UT"): others can give a member a second name or size, or hide data. */
 function checkExtra({ name, extra }: RawEntry): void {
-  const harmless = new Set([0x5455, 0x5855, 0x7855, 0x7875, 0x000a])
   const view = viewOf(extra)
   let at = 0
   while (at + 4 <= extra.length) {
     const id = view.getUint16(at, true)
     if (id === 1) throw new ArchiveError('zip64', name, `${name} uses the zip64 extension.`)
-    if (!harmless.has(id)) break
+    if (id !== UNIX_TIME) break
     at += 4 + view.getUint16(at + 2, true)
   }
   if (at !== extra.length) {

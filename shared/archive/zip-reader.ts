@@ -4,6 +4,7 @@ import { inflateInJavaScript } from '#shared/archive/codec.ts'
 import { crc32 } from '#shared/archive/crc32.ts'
 import type { MembersSource } from '#shared/archive/members-source.ts'
 import { type DirectoryEntry, readDirectory } from '#shared/archive/zip-directory.ts'
+import type { PackedZipMember } from '#shared/archive/zip-writer.ts'
 import { CHUNK_LENGTH, STORED } from '#shared/archive/zip-format.ts'
 
 export interface ZipReaderOptions {
@@ -14,11 +15,17 @@ export interface ZipReaderOptions {
   readonly inflate?: ByteTransform
 }
 
+/** A zip as a source of members, which can also give them as they are packed. */
+export interface ZipSource extends MembersSource {
+  /** A member to be copied into another zip without unpacking it. Its CRC is stated, not checked. */
+  packed(name: string): PackedZipMember
+}
+
 /**
  * Opens a proof archive as a source of members. The archive is hostile input: see readDirectory for what is refused at
  * once, and MembersSource for what shows only while a member is read (its compression, size and CRC).
  */
-export async function openZip(source: ByteSource, options: ZipReaderOptions = {}): Promise<MembersSource> {
+export async function openZip(source: ByteSource, options: ZipReaderOptions = {}): Promise<ZipSource> {
   const entries = new Map((await readDirectory(source)).map((entry) => [entry.name, entry]))
   const find = (name: string) => {
     const entry = entries.get(name)
@@ -29,6 +36,12 @@ export async function openZip(source: ByteSource, options: ZipReaderOptions = {}
     names: [...entries.keys()],
     size: (name) => find(name).unpacked,
     open: (name) => unpack(source, find(name), options.inflate ?? inflateInJavaScript),
+    packed: (name) => {
+      const entry = find(name)
+      const { crc, packed, unpacked } = entry
+      const method = entry.method === STORED ? 'stored' : 'deflated'
+      return { name, method, crc, packed, unpacked, openPacked: () => readChunks(source, entry) }
+    },
   }
 }
 

@@ -28,6 +28,19 @@ export interface ZipMember {
   open(): AsyncIterable<Uint8Array>
 }
 
+/**
+ * A member whose packed bytes are at hand, from a zip that was read: they are copied, not packed again. Sizes in bytes;
+ * `openPacked` must give exactly `packed` bytes that unpack to `unpacked` bytes of this CRC.
+ */
+export interface PackedZipMember {
+  readonly name: string
+  readonly method: 'stored' | 'deflated'
+  readonly crc: number
+  readonly packed: number
+  readonly unpacked: number
+  openPacked(): AsyncIterable<Uint8Array>
+}
+
 export interface ZipWriterOptions {
   /** Raw deflate; plain JavaScript where none is given. The same one gives the same archive, byte for byte. */
   readonly deflate?: ByteTransform
@@ -53,7 +66,7 @@ export function bytesMember(name: string, bytes: Uint8Array, method: ZipMember['
  * or when the members pass 1 GiB.
  */
 export async function* writeZip(
-  members: readonly ZipMember[],
+  members: readonly (ZipMember | PackedZipMember)[],
   options: ZipWriterOptions = {},
 ): AsyncGenerator<Uint8Array, void, undefined> {
   const seen = new Set<string>()
@@ -68,36 +81,22 @@ export async function* writeZip(
   let offset = 0
   let unpackedTotal = 0
   for (const member of members) {
-    const measured: Measured = { crc: 0, unpacked: 0, packed: 0 }
-    const source = measure(member, measured, MAX_UNPACKED - unpackedTotal)
-    const chunks: Uint8Array[] = []
-    if (member.method === 'deflated') {
-      for await (const chunk of (options.deflate ?? deflateInJavaScript)(source)) {
-        measured.packed += chunk.length
-        chunks.push(chunk)
-      }
-    } else {
-      for await (const chunk of source) measured.packed += chunk.length
-    }
-    unpackedTotal += measured.unpacked
-    const entry: WrittenMember = {
-      name: nameBytes(member.name),
-      method: member.method === 'deflated' ? DEFLATED : STORED,
-      ...measured,
-      offset,
-    }
+    const room = MAX_UNPACKED - unpackedTotal
+    const ready = 'openPacked' in member ? copied(member, room) : await pack(member, room, options)
+    const name = nameBytes(member.name)
+    const { crc, packed, unpacked } = ready
+    const entry = { name, method: member.method === 'deflated' ? DEFLATED : STORED, crc, packed, unpacked, offset }
     yield localHeader(entry)
-    if (member.method === 'deflated') {
-      // Let go of each chunk as it is taken: the archive of a large draw is not held twice.
-      for (let at = 0; at < chunks.length; at++) {
-        const chunk = chunks[at]
-        chunks[at] = NOTHING
-        if (chunk) yield chunk
-      }
-    } else {
-      yield* sameBytesAgain(member, measured)
+    let length = 0
+    for await (const chunk of ready.open()) {
+      length += chunk.length
+      yield chunk
     }
-    offset += LOCAL_LENGTH + entry.name.length + measured.packed
+    if (length !== packed) {
+      throw new ArchiveError('member-size', member.name, `${member.name} has not the packed size that was stated.`)
+    }
+    unpackedTotal += unpacked
+    offset += LOCAL_LENGTH + name.length + packed
     written.push(entry)
   }
   let directorySize = 0
@@ -112,7 +111,45 @@ export async function* writeZip(
 interface Measured {
   crc: number
   unpacked: number
-  packed: number
+}
+
+/** A member ready to be written: what its header must say, and its packed bytes, to be read once. */
+interface Ready {
+  readonly crc: number
+  readonly packed: number
+  readonly unpacked: number
+  open(): AsyncIterable<Uint8Array>
+}
+
+function copied(member: PackedZipMember, room: number): Ready {
+  if (member.unpacked > room) throw tooLarge(member.name)
+  const { crc, packed, unpacked } = member
+  return { crc, packed, unpacked, open: () => member.openPacked() }
+}
+
+async function pack(member: ZipMember, room: number, options: ZipWriterOptions): Promise<Ready> {
+  const measured: Measured = { crc: 0, unpacked: 0 }
+  const source = measure(member, measured, room)
+  if (member.method === 'stored') {
+    for await (const _chunk of source);
+    return { ...measured, packed: measured.unpacked, open: () => sameBytesAgain(member, measured) }
+  }
+  const chunks: Uint8Array[] = []
+  let packed = 0
+  for await (const chunk of (options.deflate ?? deflateInJavaScript)(source)) {
+    packed += chunk.length
+    chunks.push(chunk)
+  }
+  return { ...measured, packed, open: () => letGo(chunks) }
+}
+
+/** Lets go of each chunk as it is taken: the archive of a large draw is not held twice. */
+async function* letGo(chunks: Uint8Array[]): AsyncGenerator<Uint8Array> {
+  for (let at = 0; at < chunks.length; at++) {
+    const chunk = chunks[at]
+    chunks[at] = NOTHING
+    if (chunk) yield chunk
+  }
 }
 
 const NOTHING = new Uint8Array(0)
@@ -125,19 +162,21 @@ async function* measure(member: ZipMember, measured: Measured, room: number): As
   for await (const chunk of member.open()) {
     measured.crc = crc32(chunk, measured.crc)
     measured.unpacked += chunk.length
-    if (measured.unpacked > room) {
-      throw new ArchiveError('archive-too-large', member.name, `With ${member.name}, the archive passes 1 GiB.`)
-    }
+    if (measured.unpacked > room) throw tooLarge(member.name)
     yield chunk
   }
 }
 
 async function* sameBytesAgain(member: ZipMember, first: Measured): AsyncGenerator<Uint8Array> {
-  const second: Measured = { crc: 0, unpacked: 0, packed: 0 }
+  const second: Measured = { crc: 0, unpacked: 0 }
   yield* measure(member, second, first.unpacked)
   if (second.crc !== first.crc || second.unpacked !== first.unpacked) {
     throw new ArchiveError('member-crc', member.name, `${member.name} changed while it was being written.`)
   }
+}
+
+function tooLarge(name: string): ArchiveError {
+  return new ArchiveError('archive-too-large', name, `With ${name}, the archive passes 1 GiB.`)
 }
 
 function localHeader(entry: WrittenMember): Uint8Array {

@@ -77,6 +77,17 @@ export function checkResultAgainstSeal(
   seal: Seal,
   digest: string,
 ): Result<true, Failure<ResultCode>> {
+  const head = checkResultHead(result, seal, digest)
+  if (!head.ok) return head
+  const { beacon } = seal.sources
+  if (beacon !== null && result.reveal.beacon?.round !== beacon.round) {
+    return fail('beacon-round', 'reveal.beacon.round', `The seal names round ${beacon.round}.`)
+  }
+  return checkPicks(result.picks, seal)
+}
+
+/** The first half of it, which a check has as a step of its own (section 11, step 5): digest, time and `reveal`. */
+export function checkResultHead(result: DrawResult, seal: Seal, digest: string): Result<true, Failure<ResultCode>> {
   if (result.seal !== digest) return fail('seal-mismatch', 'seal', 'This result belongs to another seal.')
   if ((parseTime(result.drawnAt) as number) < (parseTime(seal.drawAt) as number)) {
     return fail('drawn-too-soon', 'drawnAt', 'The draw stands as drawn before its time.')
@@ -93,10 +104,7 @@ export function checkResultAgainstSeal(
       return fail('reveal-mismatch', `reveal.${name}`, words)
     }
   }
-  if (sources.beacon !== null && reveal.beacon?.round !== sources.beacon.round) {
-    return fail('beacon-round', 'reveal.beacon.round', `The seal names round ${sources.beacon.round}.`)
-  }
-  return checkPicks(result.picks, seal)
+  return ok(true)
 }
 
 function checkPicks(picks: readonly ResultPick[], seal: Seal): Result<true, Failure<ResultCode>> {
@@ -136,6 +144,7 @@ function readResult(value: unknown): DrawResult {
   }
 }
 
+// Letters and lengths of rounds are checked with the tosses (section 11, step 8).
 function readReveal(value: unknown): Reveal {
   const m = members(value, ['beacon', 'seed', 'tosses'], 'reveal')
   return {
@@ -147,13 +156,10 @@ function readReveal(value: unknown): Reveal {
       }
     }),
     seed: nullable(m.seed, (v) => hex(v, 32, 'reveal.seed')),
-    tosses: nullable(m.tosses, (v) => list(v, 'reveal.tosses').map((r, i) => readRound(r, `reveal.tosses[${i}]`))),
+    tosses: nullable(m.tosses, (v) =>
+      list(v, 'reveal.tosses').map((r, i) => text(r, `reveal.tosses[${i}]`, 'may-be-empty')),
+    ),
   }
-}
-
-function readRound(value: unknown, at: string): string {
-  if (typeof value !== 'string' || !/^[HT]+$/.test(value)) refuse('text-wrong', at, 'Tosses are written as H and T.')
-  return value as string
 }
 
 /** Reads an award strictly; throws inside `readShape`. */

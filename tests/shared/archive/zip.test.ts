@@ -1,3 +1,7 @@
+import { execFileSync } from 'node:child_process'
+import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
+import { tmpdir } from 'node:os'
+import { join } from 'node:path'
 import { unzipSync, zipSync } from 'fflate'
 import { crc32 as zlibCrc32, deflateRawSync } from 'node:zlib'
 import { describe, expect, it } from 'vitest'
@@ -100,6 +104,28 @@ describe.each([
     const zip = rawZip([{ name: 'a', bytes: new Uint8Array(0), packed: bomb, local: sizes, directory: sizes }])
     await expect(readAll(zip, inflate)).rejects.toMatchObject({ code: 'member-size', member: 'a' })
   })
+})
+
+it('members are copied from one zip into another as they are packed', async () => {
+  const first = await openZip(memorySource(await collect(writeZip(members))))
+  const copies = first.names.filter((name) => name !== 'labels.jsonl').map((name) => first.packed(name))
+  const second = await collect(writeZip([...copies, bytesMember('labels.jsonl', bytes('{}'))]))
+  expect(await readAll(second)).toEqual({ ...expected, 'labels.jsonl': bytes('{}') })
+  const short = { ...first.packed('noise.bin'), openPacked: () => first.packed('seal.json').openPacked() }
+  await expect(collect(writeZip([short]))).rejects.toMatchObject({ code: 'member-size', member: 'noise.bin' })
+})
+
+it.skipIf(!existsSync('/usr/bin/unzip'))("Debian's unzip finds nothing wrong", async () => {
+  const folder = mkdtempSync(join(tmpdir(), 'evenpenny-zip-'))
+  try {
+    writeFileSync(join(folder, 'a.zip'), await collect(writeZip(members)))
+    execFileSync('/usr/bin/unzip', ['-q', 'a.zip'], { cwd: folder })
+    for (const [name, content] of Object.entries(expected)) {
+      expect(Buffer.compare(readFileSync(join(folder, name)), content)).toBe(0)
+    }
+  } finally {
+    rmSync(folder, { recursive: true })
+  }
 })
 
 it('zlib and plain JavaScript read each other', async () => {
