@@ -1,23 +1,8 @@
 import type { Attachment, ParsedMail } from 'mailparser'
+import { escapeHtml, linkedHtml } from '#shared/text/links.ts'
 import type { StoredMail } from './mail-store.ts'
 
 /** The pages on which the mails of a development machine are read: plain HTML, no script. */
-
-const escape = (text: string) =>
-  text.replace(/[&<>"']/g, (c) => ({ '&': '&amp;', '<': '&lt;', '>': '&gt;', '"': '&quot;' })[c] ?? '&#39;')
-
-/** Text with its http and https addresses made links; a closing mark after an address stays outside it. */
-export function linkify(text: string): string {
-  return text
-    .split(/(https?:\/\/[^\s<>"']+)/)
-    .map((piece, index) => {
-      if (index % 2 === 0) return escape(piece)
-      const tail = /[.,;:!?)\]]+$/.exec(piece)?.[0] ?? ''
-      const address = piece.slice(0, piece.length - tail.length)
-      return `<a href="${escape(address)}">${escape(address)}</a>${escape(tail)}`
-    })
-    .join('')
-}
 
 const style = `
 :root{color-scheme:light dark;--paper:#FAFAF6;--tint:#EFF0EA;--ink:#18211F;--ink-2:#4A5651;--rule:#C9CDC4;--line:#737D77}
@@ -48,7 +33,7 @@ dd{margin:0}
 function page(title: string, body: string): string {
   return `<!doctype html>
 <html lang="en"><head><meta charset="utf-8"><meta name="viewport" content="width=device-width">
-<meta name="robots" content="noindex"><title>${escape(title)} – local mail</title><style>${style}</style></head>
+<meta name="robots" content="noindex"><title>${escapeHtml(title)} – local mail</title><style>${style}</style></head>
 <body><main>${body}</main></body></html>
 `
 }
@@ -57,11 +42,11 @@ const shortTime = (iso: string) => `${iso.slice(0, 10)} ${iso.slice(11, 19)} UTC
 
 export function listPage(mails: readonly StoredMail[], to: string): string {
   const entries = mails.map(
-    (mail) => `<li><a href="/mails/${mail.number}">${escape(mail.subject || '(no subject)')}</a>
-<span>To ${escape(mail.to.join(', '))}</span>
-<time datetime="${escape(mail.receivedAt)}">${shortTime(mail.receivedAt)}</time>
-${mail.attachments.length > 0 ? `<span class="note">With ${escape(mail.attachments.join(', '))}</span>` : ''}
-<span class="note">Message-ID <code>${escape(mail.messageId)}</code></span></li>`,
+    (mail) => `<li><a href="/mails/${mail.number}">${escapeHtml(mail.subject || '(no subject)')}</a>
+<span>To ${escapeHtml(mail.to.join(', '))}</span>
+<time datetime="${escapeHtml(mail.receivedAt)}">${shortTime(mail.receivedAt)}</time>
+${mail.attachments.length > 0 ? `<span class="note">With ${escapeHtml(mail.attachments.join(', '))}</span>` : ''}
+<span class="note">Message-ID <code>${escapeHtml(mail.messageId)}</code></span></li>`,
   )
   const count = mails.length === 1 ? 'One mail' : `${mails.length} mails`
   return page(
@@ -69,8 +54,8 @@ ${mail.attachments.length > 0 ? `<span class="note">With ${escape(mail.attachmen
     `<h1>Local mail</h1>
 <p>Mails that this machine has sent end here and go nowhere else. Newest first.</p>
 <form method="get" action="/"><div><label for="to">Only mails to this address</label>
-<input id="to" name="to" type="text" inputmode="email" value="${escape(to)}"></div><button type="submit">Show</button></form>
-<p>${count}${to ? ` to ${escape(to)}. <a href="/">Show all mails</a>` : ''}</p>
+<input id="to" name="to" type="text" inputmode="email" value="${escapeHtml(to)}"></div><button type="submit">Show</button></form>
+<p>${count}${to ? ` to ${escapeHtml(to)}. <a href="/">Show all mails</a>` : ''}</p>
 <ol>${entries.join('\n')}</ol>`,
   )
 }
@@ -78,20 +63,20 @@ ${mail.attachments.length > 0 ? `<span class="note">With ${escape(mail.attachmen
 export function mailPage(mail: StoredMail, parsed: ParsedMail): string {
   const attachments = parsed.attachments.map(
     (attachment, index) =>
-      `<li><a href="/mails/${mail.number}/attachments/${index}">${escape(attachmentName(attachment, index))}</a>
-<span class="note">${attachment.size} bytes, ${escape(attachment.contentType)}</span></li>`,
+      `<li><a href="/mails/${mail.number}/attachments/${index}">${escapeHtml(attachmentName(attachment, index))}</a>
+<span class="note">${attachment.size} bytes, ${escapeHtml(attachment.contentType)}</span></li>`,
   )
   const replyTo = parsed.replyTo?.text
   return page(
     mail.subject || '(no subject)',
-    `<p><a href="/">All mails</a> · <a href="/?to=${encodeURIComponent(mail.to[0] ?? '')}">All mails to ${escape(mail.to[0] ?? '')}</a></p>
-<h1>${escape(mail.subject || '(no subject)')}</h1>
-<dl><dt>From</dt><dd>${escape(parsed.from?.text ?? mail.from)}</dd>
-<dt>To</dt><dd>${escape(mail.to.join(', '))}</dd>
-${replyTo ? `<dt>Reply to</dt><dd>${escape(replyTo)}</dd>` : ''}
-<dt>Received</dt><dd><time datetime="${escape(mail.receivedAt)}">${shortTime(mail.receivedAt)}</time></dd>
-<dt>Message-ID</dt><dd><code>${escape(mail.messageId)}</code></dd></dl>
-<div class="letter">${linkify((parsed.text ?? '').trimEnd())}</div>
+    `<p><a href="/">All mails</a> · <a href="/?to=${encodeURIComponent(mail.to[0] ?? '')}">All mails to ${escapeHtml(mail.to[0] ?? '')}</a></p>
+<h1>${escapeHtml(mail.subject || '(no subject)')}</h1>
+<dl><dt>From</dt><dd>${escapeHtml(parsed.from?.text ?? mail.from)}</dd>
+<dt>To</dt><dd>${escapeHtml(mail.to.join(', '))}</dd>
+${replyTo ? `<dt>Reply to</dt><dd>${escapeHtml(replyTo)}</dd>` : ''}
+<dt>Received</dt><dd><time datetime="${escapeHtml(mail.receivedAt)}">${shortTime(mail.receivedAt)}</time></dd>
+<dt>Message-ID</dt><dd><code>${escapeHtml(mail.messageId)}</code></dd></dl>
+<div class="letter">${linkedHtml((parsed.text ?? '').trimEnd())}</div>
 ${attachments.length > 0 ? `<h2>Attachments</h2><ol>${attachments.join('\n')}</ol>` : ''}
 <p>${typeof parsed.html === 'string' ? `<a href="/mails/${mail.number}/html">Its HTML part</a> · ` : ''}<a href="/mails/${mail.number}/raw">The mail as it was sent</a></p>`,
   )
