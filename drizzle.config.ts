@@ -4,4 +4,5 @@ export default defineConfig({
   dialect: 'postgresql',
   schema: './server/store/schema/*.ts',
   out: './drizzle',
+  casing: 'snake_case',
 })

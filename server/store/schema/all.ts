@@ -1,0 +1,7 @@
+export * from './draw.ts'
+export * from './entrant.ts'
+export * from './operation.ts'
+export * from './people.ts'
+export * from './record.ts'
+export * from './result.ts'
+export * from './seal.ts'
