@@ -1,6 +1,6 @@
 // Builds build/check/: check.mjs as it stands, and beside it bls12-381.mjs, the BLS12-381 library that it needs, in one readable file
 // with its licences on top. Both go into every proof archive. The output is the same bytes for the same package versions.
-import { copyFileSync, mkdirSync, readFileSync, writeFileSync } from 'node:fs'
+import { mkdirSync, readFileSync, renameSync, writeFileSync } from 'node:fs'
 import { dirname, join, relative } from 'node:path'
 import { fileURLToPath } from 'node:url'
 import { build } from 'vite'
@@ -56,6 +56,13 @@ ${licence('@noble/hashes')}
 
 `
 mkdirSync(out, { recursive: true })
-writeFileSync(join(out, 'bls12-381.mjs'), head + code)
-copyFileSync(join(here, 'check.mjs'), join(out, 'check.mjs'))
+// Each file is put in place whole: a check that starts meanwhile never reads half of one.
+for (const [name, text] of [
+  ['bls12-381.mjs', head + code],
+  ['check.mjs', readFileSync(join(here, 'check.mjs'), 'utf8')],
+]) {
+  const waiting = join(out, `.${name}.${process.pid}`)
+  writeFileSync(waiting, text)
+  renameSync(waiting, join(out, name))
+}
 console.log(`Wrote ${relative(root, out)}/check.mjs and bls12-381.mjs`)
