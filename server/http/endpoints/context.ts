@@ -1,4 +1,3 @@
-import type { Readable } from 'node:stream'
 import type { Actor, Resource } from '#server/http/authorisation/actor.ts'
 
 /** What a handler may do with the visitor's session. Both take effect when the response leaves. */
@@ -10,14 +9,13 @@ export interface SessionControl {
   readonly id: string | null
 }
 
-/** A file on its way in. Reading it to the end is the handler's part; nothing of it is kept in memory. */
+/** A file on its way in; nothing of it is kept in memory. */
 export interface Upload {
   readonly fileName: string
   /** Size of the whole request in bytes, as its sender stated it; 0 where it stated none. */
   readonly bytesTotal: number
-  readonly stream: Readable
-  /** Aborted where the sender goes away or the file is too large. */
-  readonly signal: AbortSignal
+  /** Throws where the sender goes away half-way, and where the file turns out to be too large. */
+  readonly bytes: AsyncIterable<Uint8Array>
 }
 
 /** One visitor's request, the same for calls over HTTP and for calls made while a page is rendered. */

@@ -53,7 +53,7 @@ export function createSessions(options: {
       // Behind a proxy the application's `trust proxy` decides whether the request came over TLS.
       cookie: { path: '/', httpOnly: true, sameSite: 'lax', secure: options.https },
     }),
-    close: () => store.close(),
+    close: async () => store.close(),
   }
 }
 
