@@ -2,6 +2,8 @@
 export interface MembersSource {
   /** Checked names, no two equal in any letter case, in the archive's order. */
   readonly names: readonly string[]
+  /** What lies beside the members and is no part of the archive, as may happen in a folder. */
+  readonly strays?: readonly string[]
   /** Unpacked size in bytes, as the archive states it. Throws ArchiveError where there is no such member. */
   size(name: string): number
   /**

@@ -1,46 +1,60 @@
 import { createReadStream } from 'node:fs'
-import { readdir, stat } from 'node:fs/promises'
+import { lstat, readdir, readFile } from 'node:fs/promises'
 import { join } from 'node:path'
 import { ArchiveError } from '#shared/archive/archive-error.ts'
 import type { MembersSource } from '#shared/archive/members-source.ts'
-import { checkMemberName, checkNameIsNew, MAX_UNPACKED } from '#shared/archive/zip-format.ts'
+import { parseSums, SUMS_MEMBER } from '#shared/archive/sums.ts'
+import { MAX_UNPACKED } from '#shared/archive/zip-format.ts'
 
 /**
- * The files of a folder into which a proof archive was unpacked. Refuses what could not have come out of one: folders,
- * links, names outside the archive's alphabet, over 1 GiB.
+ * The files of a folder into which a proof archive was unpacked: SHA256SUMS and what it names. Anything else that lies
+ * there is a stray. Throws ArchiveError for links, folders, files that are not there, and over 1 GiB.
  */
 export async function openFolder(folder: string): Promise<MembersSource> {
+  const present = (await readdir(folder)).sort()
+  if (!present.includes(SUMS_MEMBER)) {
+    throw new ArchiveError(
+      'member-missing',
+      SUMS_MEMBER,
+      'The folder has no SHA256SUMS: it is no unpacked proof archive.',
+    )
+  }
   const sizes = new Map<string, number>()
-  const seen = new Set<string>()
   let total = 0
-  const files = await readdir(folder, { withFileTypes: true })
-  files.sort((a, b) => (a.name < b.name ? -1 : 1))
-  for (const file of files) {
-    checkMemberName(file.name)
-    checkNameIsNew(file.name, seen)
-    if (!file.isFile()) {
-      throw new ArchiveError('zip-not-a-file', file.name, `${file.name} is not an ordinary file.`)
-    }
-    const { size } = await stat(join(folder, file.name))
-    total += size
+  const add = async (name: string) => {
+    if (!present.includes(name)) throw missing(name)
+    const file = await lstat(join(folder, name))
+    if (!file.isFile()) throw new ArchiveError('zip-not-a-file', name, `${name} is not an ordinary file.`)
+    total += file.size
     if (total > MAX_UNPACKED) {
-      throw new ArchiveError('archive-too-large', file.name, `With ${file.name}, the folder holds over 1 GiB.`)
+      throw new ArchiveError('archive-too-large', name, `With ${name}, the folder holds over 1 GiB.`)
     }
-    sizes.set(file.name, size)
+    sizes.set(name, file.size)
+  }
+  await add(SUMS_MEMBER)
+  if ((sizes.get(SUMS_MEMBER) ?? 0) <= 2 ** 20) {
+    const sums = parseSums(new Uint8Array(await readFile(join(folder, SUMS_MEMBER))))
+    // Where the sums cannot be read, the check says so: it reads them itself.
+    for (const name of sums.ok ? sums.value.keys() : present.filter((name) => name !== SUMS_MEMBER)) await add(name)
   }
   const find = (name: string) => {
     const size = sizes.get(name)
-    if (size === undefined) throw new ArchiveError('member-missing', name, `The folder has no ${name}.`)
+    if (size === undefined) throw missing(name)
     return size
   }
   return {
     names: [...sizes.keys()],
+    strays: present.filter((name) => !sizes.has(name)),
     size: find,
-    open: (name) => readFile(join(folder, name), name, find(name)),
+    open: (name) => readPieces(join(folder, name), name, find(name)),
   }
 }
 
-async function* readFile(path: string, name: string, size: number): AsyncGenerator<Uint8Array> {
+function missing(name: string): ArchiveError {
+  return new ArchiveError('member-missing', name, `The folder has no ${name}.`)
+}
+
+async function* readPieces(path: string, name: string, size: number): AsyncGenerator<Uint8Array> {
   let read = 0
   for await (const chunk of createReadStream(path, { highWaterMark: 65_536 })) {
     read += (chunk as Uint8Array).length

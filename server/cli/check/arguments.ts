@@ -1,0 +1,67 @@
+import { parseArgs } from 'node:util'
+
+export const CHECK_USAGE = `Usage: npm run check -- [--test-beacon] [--key FINGERPRINT] proof.zip [receipt.json …]
+       npm run check -- [--test-beacon] [--key FINGERPRINT] --url DRAW_PAGE [receipt.json …]
+
+  proof.zip           a proof archive, or a folder into which one was unpacked
+  receipt.json …      receipts or short proofs to check against it
+  --url DRAW_PAGE     fetches the archive of a draw's page first, as in https://site.example/draws/spring-fair
+  --key FINGERPRINT   all 64 hexadecimal digits of the site's key, from its pages, posters or tickets
+  --test-beacon       lets the development chain pass, for tests and rehearsals`
+
+/** The command was used in a way that it does not understand; the message is a whole sentence. */
+export class UsageError extends Error {}
+
+export interface CheckArguments {
+  readonly archive: { readonly kind: 'path'; readonly path: string } | { readonly kind: 'url'; readonly url: URL }
+  readonly receipts: readonly string[]
+  readonly expectedKey: string | undefined
+  readonly testBeacon: boolean
+}
+
+/** Reads the command line of `npm run check`. Throws UsageError. */
+export function readCheckArguments(args: readonly string[]): CheckArguments {
+  const { values, positionals } = parse(args)
+  const receipts = [...positionals]
+  const common = { expectedKey: readFingerprint(values.key), testBeacon: values['test-beacon'] === true }
+  if (values.url !== undefined) return { archive: { kind: 'url', url: proofAddress(values.url) }, receipts, ...common }
+  const path = receipts.shift()
+  if (path === undefined) throw new UsageError('Say which proof archive to check, or give a draw page with --url.')
+  return { archive: { kind: 'path', path }, receipts, ...common }
+}
+
+function parse(args: readonly string[]) {
+  try {
+    return parseArgs({
+      args: [...args],
+      allowPositionals: true,
+      options: { 'test-beacon': { type: 'boolean' }, key: { type: 'string' }, url: { type: 'string' } },
+    })
+  } catch (error) {
+    throw new UsageError(error instanceof Error ? error.message : String(error))
+  }
+}
+
+/** A fingerprint as people copy it: in capitals, in groups. */
+function readFingerprint(text: string | undefined): string | undefined {
+  if (text === undefined) return undefined
+  const digits = text.replace(/[\s:-]/g, '').toLowerCase()
+  if (!/^[0-9a-f]{64}$/.test(digits)) {
+    throw new UsageError('--key wants all 64 hexadecimal digits of the fingerprint; shortened ones prove nothing.')
+  }
+  return digits
+}
+
+/** Where a draw page keeps its archive; the archive's own address passes too. */
+function proofAddress(text: string): URL {
+  if (!URL.canParse(text)) throw new UsageError(`--url wants the whole address of a draw's page; ${text} is none.`)
+  const url = new URL(text)
+  if (url.protocol !== 'http:' && url.protocol !== 'https:') {
+    throw new UsageError('--url wants an address that begins with https:// or http://.')
+  }
+  url.hash = ''
+  url.search = ''
+  const path = url.pathname.replace(/\/+$/, '')
+  url.pathname = path.endsWith('/proof.zip') ? path : `${path}/proof.zip`
+  return url
+}

@@ -1,0 +1,103 @@
+import { mkdtemp, readFile, rm, stat } from 'node:fs/promises'
+import { tmpdir } from 'node:os'
+import { basename, join } from 'node:path'
+import { nodeCheckTools } from '#server/adapters/archive/check-tools.ts'
+import { openFileSource } from '#server/adapters/archive/file-source.ts'
+import { openFolder } from '#server/adapters/archive/folder-source.ts'
+import { inflateWithZlib } from '#server/adapters/archive/zlib-codec.ts'
+import { CHECK_USAGE, readCheckArguments, UsageError } from '#server/cli/check/arguments.ts'
+import { fetchArchive, FetchError, type FetchLimits } from '#server/cli/check/fetch-archive.ts'
+import type { MembersSource } from '#shared/archive/members-source.ts'
+import { openZip } from '#shared/archive/zip-reader.ts'
+import { checkArchive, type CheckEvent, type CheckReport } from '#shared/protocol/check/check-archive.ts'
+import type { CheckOptions, GivenReceipt } from '#shared/protocol/check/state.ts'
+import { BEYOND_ANY_CHECK, verdictSentences } from '#shared/protocol/check/verdict.ts'
+
+export interface Output {
+  out(line: string): void
+  error(line: string): void
+}
+
+/** Runs `npm run check`; returns its exit status: 0 all arithmetic holds, 1 it does not, 2 wrong usage. */
+export async function runCheck(args: readonly string[], output: Output, limits?: FetchLimits): Promise<0 | 1 | 2> {
+  let folder: string | null = null
+  try {
+    const { archive, receipts, expectedKey, testBeacon } = readCheckArguments(args)
+    const given = await readReceipts(receipts)
+    let path: string
+    if (archive.kind === 'url') {
+      folder = await mkdtemp(join(tmpdir(), 'evenpenny-check-'))
+      path = join(folder, 'proof.zip')
+      output.out(`Fetching ${archive.url.href}`)
+      await fetchArchive(archive.url, path, limits)
+    } else path = archive.path
+    const report = await checkPath(path, (event) => printEvent(event, output), {
+      allowDevelopmentChain: testBeacon,
+      receipts: given,
+      ...(expectedKey === undefined ? {} : { expectedKey }),
+    })
+    printReport(report, output)
+    return report.ok ? 0 : 1
+  } catch (error) {
+    if (error instanceof FetchError) {
+      output.error(error.message)
+      return 1
+    }
+    if (!(error instanceof UsageError)) throw error
+    output.error(`${error.message}\n\n${CHECK_USAGE}`)
+    return 2
+  } finally {
+    if (folder !== null) await rm(folder, { recursive: true, force: true })
+  }
+}
+
+/** Checks an archive, zipped or unpacked, that lies on this machine. Throws UsageError where nothing lies there. */
+export async function checkPath(
+  path: string,
+  onEvent: (event: CheckEvent) => void,
+  options: CheckOptions,
+): Promise<CheckReport> {
+  const found = await stat(path).catch(() => null)
+  if (found === null) throw new UsageError(`There is no ${path}.`)
+  const run = (open: () => Promise<MembersSource>) => checkArchive({ open, tools: nodeCheckTools, options, onEvent })
+  if (found.isDirectory()) return run(() => openFolder(path))
+  const file = await openFileSource(path)
+  try {
+    return await run(() => openZip(file, { inflate: inflateWithZlib }))
+  } finally {
+    await file.close()
+  }
+}
+
+async function readReceipts(paths: readonly string[]): Promise<GivenReceipt[]> {
+  const receipts: GivenReceipt[] = []
+  for (const path of paths) {
+    const bytes = await readFile(path).catch(() => null)
+    if (bytes === null) throw new UsageError(`There is no receipt ${path}.`)
+    receipts.push({ name: basename(path), bytes: new Uint8Array(bytes) })
+  }
+  return receipts
+}
+
+function printEvent(event: CheckEvent, output: Output): void {
+  if (event.kind !== 'step-passed') return
+  output.out(`step ${event.step}  ${event.title} (${event.milliseconds.toFixed(0)} ms)\n        ${event.found}`)
+}
+
+function printReport(report: CheckReport, output: Output): void {
+  if (!report.ok) {
+    const { step, code, at, message } = report.failure
+    output.out(printable(`FAILED at step ${step}: ${at}: ${message} [${code}]`))
+    output.out('The arithmetic does not hold, or cannot be read. Nothing behind this step was looked at.')
+    return
+  }
+  output.out('')
+  for (const sentence of verdictSentences(report.verdict)) output.out(sentence)
+  output.out('What no check can show:')
+  for (const sentence of BEYOND_ANY_CHECK) output.out(`- ${sentence}`)
+}
+
+/** Text out of a hostile archive must not steer the terminal. */
+function printable(text: string): string {
+  return text.replace(/[\p{Cc}\p{Bidi_Control}]/gu, '\uFFFD')
+}

@@ -1,0 +1,40 @@
+/** The members of a proof archive (PROTOCOL section 9), in the order in which we write them. */
+export const ARCHIVE_MEMBERS = [
+  'CHECKING.txt',
+  'seal.json',
+  'seal.sig',
+  'terms.txt',
+  'entries.csv',
+  'result.json',
+  'result.sig',
+  'transcript.jsonl',
+  'labels.jsonl',
+  'site-key.pem',
+  'check.mjs',
+  'bls12-381.mjs',
+  'SHA256SUMS',
+] as const
+
+export type ArchiveMember = (typeof ARCHIVE_MEMBERS)[number]
+
+/** What is put together anew whenever the archive is asked for, so that a name can be withdrawn. */
+export const UNLOCKED_MEMBERS = ['labels.jsonl', 'SHA256SUMS'] as const satisfies readonly ArchiveMember[]
+export type UnlockedMember = (typeof UNLOCKED_MEMBERS)[number]
+
+/** What is kept for good, under a lock. */
+export type LockedMember = Exclude<ArchiveMember, UnlockedMember>
+export const LOCKED_MEMBERS = ARCHIVE_MEMBERS.filter((name): name is LockedMember => !isUnlocked(name))
+
+/** Whether a name is that of a member which this version knows. */
+export function isArchiveMember(name: string): name is ArchiveMember {
+  return (ARCHIVE_MEMBERS as readonly string[]).includes(name)
+}
+
+/** How a member is packed: signatures do not shrink, and `openssl` users may want them at a glance. */
+export function memberMethod(name: string): 'stored' | 'deflated' {
+  return name.endsWith('.sig') ? 'stored' : 'deflated'
+}
+
+function isUnlocked(name: ArchiveMember): name is UnlockedMember {
+  return (UNLOCKED_MEMBERS as readonly string[]).includes(name)
+}

@@ -1,0 +1,40 @@
+import { ArchiveError } from '#shared/archive/archive-error.ts'
+import { ARCHIVE_MEMBERS, isArchiveMember } from '#shared/archive/members.ts'
+import { digestOf, parseSums, SUMS_MEMBER } from '#shared/archive/sums.ts'
+import { need, StepFailure } from '#shared/protocol/check/failure.ts'
+import { type CheckStep, memberBytes, throwIfCancelled } from '#shared/protocol/check/state.ts'
+
+/** Step 1: the zip, its members and SHA256SUMS (PROTOCOL section 9). Unpacks everything once. */
+export const checkMembers: CheckStep = async (state) => {
+  const source = await state.open()
+  state.source = source
+  const present = new Set(source.names)
+  for (const name of ARCHIVE_MEMBERS) {
+    if (!present.has(name)) throw new ArchiveError('member-missing', name, `The archive has no ${name}.`)
+  }
+  const sums = need(parseSums(await memberBytes(state, SUMS_MEMBER)), SUMS_MEMBER)
+  for (const name of sums.keys()) {
+    if (!present.has(name)) {
+      throw new StepFailure('sum-without-member', SUMS_MEMBER, `It names ${name}, which is not in the archive.`)
+    }
+  }
+  const total = source.names.reduce((sum, name) => sum + source.size(name), 0)
+  let done = 0
+  for (const name of source.names) {
+    if (name === SUMS_MEMBER) continue
+    const expected = sums.get(name)
+    if (expected === undefined) {
+      throw new StepFailure('sum-missing', SUMS_MEMBER, `It does not name ${name}, which is in the archive.`)
+    }
+    throwIfCancelled(state)
+    state.progress(done, total)
+    if ((await digestOf(source.open(name), state.tools.createSha256())) !== expected) {
+      throw new StepFailure('sum-mismatch', name, `${name} does not have the digest in ${SUMS_MEMBER}.`)
+    }
+    done += source.size(name)
+    await state.tools.pause?.()
+  }
+  state.progress(total, total)
+  state.notExamined = [...source.names.filter((name) => !isArchiveMember(name)), ...(source.strays ?? [])]
+  return `${source.names.length} members, ${total} bytes unpacked, each with the digest that SHA256SUMS states.`
+}

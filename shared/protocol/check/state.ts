@@ -1,0 +1,111 @@
+import { ArchiveError } from '#shared/archive/archive-error.ts'
+import { type MembersSource, readMember } from '#shared/archive/members-source.ts'
+import type { CheckTools } from '#shared/protocol/check/tools.ts'
+import { StepFailure } from '#shared/protocol/check/failure.ts'
+import type { DrawResult } from '#shared/protocol/result.ts'
+import type { Seal } from '#shared/protocol/seal-types.ts'
+
+/** A receipt or short proof to be checked against the archive; `name` is for the report only. */
+export interface GivenReceipt {
+  readonly name: string
+  readonly bytes: Uint8Array
+}
+
+/** Stops a check from outside; an AbortSignal is one. */
+export interface CancelSignal {
+  readonly aborted: boolean
+}
+
+export interface CheckOptions {
+  /** Lets the development chain pass, whose secret is public; the verdict then says so. */
+  readonly allowDevelopmentChain?: boolean
+  /** The fingerprint that the site publishes, 64 lower-case hex digits. */
+  readonly expectedKey?: string
+  readonly receipts?: readonly GivenReceipt[]
+  readonly signal?: CancelSignal
+}
+
+/** The check was stopped from outside: it has no verdict. */
+export class CheckCancelled extends Error {
+  constructor() {
+    super('The check was stopped before its end.')
+    this.name = 'CheckCancelled'
+  }
+}
+
+/** What each step leaves for the later ones. A step reads only what steps before it have set. */
+export interface CheckState {
+  readonly tools: CheckTools
+  readonly options: CheckOptions
+  /** Opens the archive; throws ArchiveError. */
+  readonly open: () => Promise<MembersSource>
+  readonly progress: (done: number, total: number) => void
+  source: MembersSource
+  publicKey: Uint8Array
+  fingerprint: string
+  seal: Seal
+  sealDigest: Uint8Array
+  sealDigestHex: string
+  /** Sealed tickets and 32-byte entry commitments, leaf by leaf. */
+  tickets: Float64Array
+  entryCommits: Uint8Array
+  result: DrawResult
+  beaconRandomness: Uint8Array | null
+  tossBits: readonly number[] | null
+  transcriptDigest: string
+  /** Winning leaves whose label is not open. */
+  withheld: readonly number[]
+  /** What the archive or the folder holds and this version does not read. */
+  notExamined: readonly string[]
+}
+
+/** One step: throws StepFailure or ArchiveError where it does not hold; returns what it found, in a sentence. */
+export type CheckStep = (state: CheckState) => string | Promise<string>
+
+/** Longest members, in bytes, that are read into memory whole. The rest of the archive's 1 GiB is entries and coins. */
+export const MEMBER_LIMITS = {
+  SHA256SUMS: 2 ** 20,
+  'seal.json': 2 ** 26,
+  'seal.sig': 64,
+  'terms.txt': 2 ** 24,
+  'result.json': 2 ** 26,
+  'result.sig': 64,
+  'labels.jsonl': 2 ** 26,
+  'site-key.pem': 2 ** 12,
+} as const
+
+/** A whole member; fails where it passes its limit. */
+export async function memberBytes(state: CheckState, name: keyof typeof MEMBER_LIMITS): Promise<Uint8Array> {
+  const bytes = await readMember(state.source, name, MEMBER_LIMITS[name])
+  if (bytes !== null) return bytes
+  throw new StepFailure('member-too-long', name, `${name} is longer than the ${MEMBER_LIMITS[name]} bytes it may have.`)
+}
+
+/** Throws where the check was stopped. */
+export function throwIfCancelled(state: CheckState): void {
+  if (state.options.signal?.aborted) throw new CheckCancelled()
+}
+
+/** A large member in pieces, with progress told, other work let in and the signal looked at between them. */
+export async function* streamMember(state: CheckState, name: string): AsyncGenerator<Uint8Array> {
+  const total = state.source.size(name)
+  let done = 0
+  let told = 0
+  for await (const chunk of state.source.open(name)) {
+    yield chunk
+    done += chunk.length
+    if (done - told < 2 ** 20) continue
+    told = done
+    throwIfCancelled(state)
+    state.progress(done, total)
+    await state.tools.pause?.()
+  }
+  state.progress(total, total)
+}
+
+/** An ArchiveError as the failure of the step in which it came up. */
+export function asStepFailure(error: unknown): StepFailure | null {
+  if (error instanceof StepFailure) return error
+  if (error instanceof ArchiveError) return new StepFailure(error.code, error.member ?? 'the archive', error.message)
+  return null
+}

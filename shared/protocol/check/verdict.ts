@@ -1,0 +1,73 @@
+import type { CheckState } from '#shared/protocol/check/state.ts'
+import { networkOf } from '#shared/protocol/networks.ts'
+
+/**
+ * Whether the seal is shown to be older than the draw (PROTOCOL section 11). Only a timestamp, or a checkpoint cosigned
+ * by somebody other than the site, shows it: members that bring one will add a case here.
+ */
+export type SealedInTime = { readonly shown: false }
+
+/** What a check that has passed all its steps says. */
+export interface CheckVerdict {
+  readonly arithmetic: 'holds'
+  readonly sealedInTime: SealedInTime
+  /** sealDigest, all 64 hex digits. */
+  readonly sealDigest: string
+  readonly fingerprint: string
+  /** Whether a fingerprint was given to compare the key with. */
+  readonly keyCompared: boolean
+  readonly developmentChain: boolean
+  /** Winning leaves whose label is not open. */
+  readonly withheld: readonly number[]
+  readonly notExamined: readonly string[]
+}
+
+/** What no check can show, in plain words (PROTOCOL section 11). */
+export const BEYOND_ANY_CHECK = [
+  'Whether every ticket sold was entered, and no invented entrant was. Receipts, the witness’s sample of stubs and the money show that.',
+  'Whether a coin was tossed as it is written down.',
+  'That the beacon’s members and the site, all together, did not choose the outcome. A hall that fears this adds tosses.',
+] as const
+
+/** Sums up a state in which all steps have passed. */
+export function verdictOf(state: CheckState): CheckVerdict {
+  const { beacon } = state.seal.sources
+  return {
+    arithmetic: 'holds',
+    sealedInTime: { shown: false },
+    sealDigest: state.sealDigestHex,
+    fingerprint: state.fingerprint,
+    keyCompared: state.options.expectedKey !== undefined,
+    developmentChain: beacon !== null && networkOf(beacon) === 'development',
+    withheld: state.withheld,
+    notExamined: state.notExamined,
+  }
+}
+
+/** The verdict in whole sentences, the two halves first. */
+export function verdictSentences(verdict: CheckVerdict): readonly string[] {
+  const sentences = [
+    'The arithmetic holds: from this seal and these sources, these picks follow and no others.',
+    'Sealed in time: not shown. Only a timestamp, or a checkpoint cosigned by somebody other than the site, over the seal ' +
+      `${verdict.sealDigest} from before the draw would show it, and this archive has none that this check reads.`,
+  ]
+  if (verdict.developmentChain) {
+    sentences.push(
+      'This is a test: its beacon is the development chain, whose secret is public, so anybody could choose its outcome.',
+    )
+  }
+  sentences.push(
+    verdict.keyCompared
+      ? 'Signed by the key whose fingerprint was given.'
+      : 'Signed by an unknown key. Compare all 64 digits with the fingerprint that the site publishes on its pages, posters ' +
+          `and tickets: ${verdict.fingerprint}`,
+  )
+  if (verdict.withheld.length > 0) {
+    const leaves = verdict.withheld.slice(0, 20).join(', ') + (verdict.withheld.length > 20 ? ', …' : '')
+    sentences.push(
+      `Label withheld for ${verdict.withheld.length} winning leaves: ${leaves}. The picks hold without it.`,
+    )
+  }
+  if (verdict.notExamined.length > 0) sentences.push(`Not examined: ${verdict.notExamined.join(', ')}.`)
+  return sentences
+}
