@@ -419,8 +419,8 @@ CREATE TRIGGER rules AFTER INSERT ON transcript_line REFERENCING NEW TABLE AS to
 --> statement-breakpoint
 CREATE FUNCTION archive_rules() RETURNS trigger LANGUAGE plpgsql AS $$
 BEGIN
-  IF TG_OP = 'DELETE' OR (NEW.draw_id, NEW.key, NEW.bytes, NEW.sha256, NEW.created_at)
-    IS DISTINCT FROM (OLD.draw_id, OLD.key, OLD.bytes, OLD.sha256, OLD.created_at) THEN
+  IF TG_OP = 'DELETE' OR (NEW.draw_id, NEW.key, NEW.bytes, NEW.sha256, NEW.members, NEW.created_at)
+    IS DISTINCT FROM (OLD.draw_id, OLD.key, OLD.bytes, OLD.sha256, OLD.members, OLD.created_at) THEN
     PERFORM refuse('What the archive holds is never changed.');
   END IF;
   RETURN NEW;

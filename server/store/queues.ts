@@ -1,20 +1,40 @@
 /**
- * The kinds of job. Delays are in seconds and double from try to try. Each job is safe to run twice and locks the row of
+ * The kinds of job. Delays between tries are in seconds. Each job is safe to run twice and locks the row of
  * what it does, since an expired job can still be running when it is started again.
  */
 export const QUEUES = {
-  /** Closes draws whose closing time has come. */
-  close: { retryLimit: 20, retryDelay: 2, retryBackoff: true },
-  /** Seals a long list. Not tried again: a promoter looks at why it was refused. */
+  /** Closes a draw whose closing time has come. */
+  close: { retryLimit: 1000, retryDelay: 3, retryBackoff: false },
+  /** Seals a long list. A refusal is not tried again: a promoter looks at it. */
   seal: { retryLimit: 2, retryDelay: 1, retryBackoff: false },
   /** Settles one draw from its beacon's round on. */
-  settle: { retryLimit: 100, retryDelay: 2, retryBackoff: true },
+  settle: { retryLimit: 100_000, retryDelay: 3, retryBackoff: false },
   /** Puts one draw's proof into the object store. */
-  archive: { retryLimit: 60, retryDelay: 2, retryBackoff: true },
+  archive: { retryLimit: 2000, retryDelay: 3, retryBackoff: false },
   /** Writes the rows of a draw's mails: its seal, its result, a notice. */
-  'prepare-mail': { retryLimit: 20, retryDelay: 2, retryBackoff: true },
+  'prepare-mail': { retryLimit: 1000, retryDelay: 3, retryBackoff: false },
   /** Sends the mails that are due. */
-  'send-mail': { retryLimit: 20, retryDelay: 2, retryBackoff: true },
+  'send-mail': { retryLimit: 1000, retryDelay: 3, retryBackoff: false },
 } as const satisfies Record<string, { retryLimit: number; retryDelay: number; retryBackoff: boolean }>
 
 export type QueueName = keyof typeof QUEUES
+
+/** What each kind of job is told. Ids only: a queue holds no personal data. */
+export interface JobData {
+  readonly close: { readonly draw: string }
+  readonly seal: {
+    readonly draw: string
+    readonly actor: string
+    readonly version: number
+    readonly entrants: number
+    readonly tickets: number
+  }
+  readonly settle: { readonly draw: string }
+  readonly archive: { readonly draw: string }
+  readonly 'prepare-mail': {
+    readonly draw: string
+    readonly about: 'seal' | 'result' | 'notice'
+    readonly logIndex?: number
+  }
+  readonly 'send-mail': { readonly draw?: string }
+}

@@ -16,6 +16,8 @@ export const mail = pgTable(
     sealId: bigint({ mode: 'number' }),
     leaf: integer(),
     entrantId: bigint({ mode: 'number' }),
+    /** For notices: the log event that they tell of. */
+    logIndex: bigint({ mode: 'number' }),
     messageId: text().notNull().unique(),
     state: text({ enum: ['queued', 'sent', 'failed', 'dropped'] })
       .notNull()

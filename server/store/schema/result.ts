@@ -1,5 +1,5 @@
 import { sql } from 'drizzle-orm'
-import { bigint, boolean, check, integer, pgTable, primaryKey, text, unique, uuid } from 'drizzle-orm/pg-core'
+import { bigint, boolean, check, integer, jsonb, pgTable, primaryKey, text, unique, uuid } from 'drizzle-orm/pg-core'
 import { at, bytes } from './columns.ts'
 import { draw } from './draw.ts'
 import { seal } from './seal.ts'
@@ -96,6 +96,8 @@ export const archive = pgTable('archive', {
   key: text().notNull().unique(),
   bytes: bigint({ mode: 'number' }).notNull(),
   sha256: text().notNull(),
+  /** SHA-256 of each member, in hex: what SHA256SUMS of the public archive is made of. */
+  members: jsonb().$type<Record<string, string>>().notNull(),
   lockedUntil: at(),
   /** When the object was read back and found equal. */
   verifiedAt: at(),
