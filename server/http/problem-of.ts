@@ -1,4 +1,5 @@
 import { PasswordsBusyError } from '#server/adapters/passwords/passwords.ts'
+import { CommandError, type CommandErrorCode } from '#server/commands/command-error.ts'
 import { problem } from '#server/http/problems.ts'
 import { refusalOf } from '#server/store/database.ts'
 import { Problem } from '#shared/schemas/problem.ts'
@@ -16,8 +17,20 @@ export function createProblemOf(onUnexpected: (error: unknown) => void): Problem
   }
 }
 
+const STATUS_OF: Readonly<Record<CommandErrorCode, number>> = {
+  'not-found': 404,
+  invalid: 422,
+  changed: 409,
+  refused: 409,
+  expired: 410,
+  'wrong-password': 422,
+}
+
 function expectedProblem(error: unknown): Problem | null {
   if (error instanceof Problem) return error
+  if (error instanceof CommandError) {
+    return problem(STATUS_OF[error.code], error.message, { code: error.code, errors: error.fields })
+  }
   if (error instanceof PasswordsBusyError) return problem(503, error.message, { code: 'busy' })
   // EP001: a rule that the database itself keeps, whose message is a sentence for people.
   const refusal = refusalOf(error)

@@ -29,7 +29,8 @@ export interface Sessions {
  */
 export function createSessions(options: {
   readonly pool: Pool
-  readonly secret: string
+  /** The first signs, all are accepted. */
+  readonly secrets: readonly string[]
   readonly https: boolean
   readonly onError: (error: unknown) => void
 }): Sessions {
@@ -46,7 +47,7 @@ export function createSessions(options: {
     cookieName,
     middleware: session({
       name: cookieName,
-      secret: options.secret,
+      secret: [...options.secrets],
       store,
       resave: false,
       saveUninitialized: false,
