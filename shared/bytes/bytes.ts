@@ -2,6 +2,7 @@
 
 interface Encoder {
   encode(text: string): Uint8Array
+  encodeInto(text: string, target: Uint8Array): { written: number }
 }
 interface Decoder {
   decode(bytes: Uint8Array): string
@@ -88,6 +89,23 @@ export function utf8(text: string): Uint8Array {
   return encoder.encode(text)
 }
 
+/**
+ * Writes the UTF-8 of `text` into `target` from `offset` on, without allocating, and returns the offset behind it.
+ * Requires room for three bytes a UTF-16 unit; throws a RangeError otherwise, or for a lone surrogate.
+ */
+export function writeUtf8(target: Uint8Array, offset: number, text: string): number {
+  if (offset + 3 * text.length > target.length) throw new RangeError('no room for this text')
+  for (let i = 0; i < text.length; i += 1) {
+    const code = text.charCodeAt(i)
+    if (code > 0x7f) {
+      if (hasLoneSurrogate(text)) throw new RangeError('text holds a lone surrogate')
+      return offset + encoder.encodeInto(text, target.subarray(offset)).written
+    }
+    target[offset + i] = code
+  }
+  return offset + text.length
+}
+
 /** Text from UTF-8, or null where the bytes are not well-formed UTF-8. A byte order mark stays in the text. */
 export function decodeUtf8(bytes: Uint8Array): string | null {
   assertBytes(bytes, 'bytes')
@@ -100,5 +118,6 @@ export function decodeUtf8(bytes: Uint8Array): string | null {
 
 /** Whether half of a surrogate pair stands alone in the text. */
 export function hasLoneSurrogate(text: string): boolean {
-  return /\p{Surrogate}/u.test(text)
+  // Almost no text holds surrogates at all, and this first question is far cheaper.
+  return /[\ud800-\udfff]/.test(text) && /\p{Surrogate}/u.test(text)
 }

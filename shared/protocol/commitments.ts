@@ -1,5 +1,4 @@
-import { canonicalBytes } from '../bytes/canonical-json.ts'
-import { concatBytes, utf8 } from '../bytes/bytes.ts'
+import { assertBytes, hasLoneSurrogate, utf8, writeUtf8 } from '../bytes/bytes.ts'
 import { createHmac, type Sha256 } from '../bytes/hashing.ts'
 import { members, readShape, refuse, text, type Members, type ShapeCode } from './shape.ts'
 import type { Failure, Result } from '../bytes/result.ts'
@@ -61,8 +60,6 @@ export function parseIdentity(value: unknown): Result<Identity, Failure<ShapeCod
   return readShape(() => readIdentity(value, 'identity'))
 }
 
-const LABEL = Uint8Array.of(3)
-const IDENTITY = Uint8Array.of(4)
 const LABEL_INFO = utf8('label')
 const IDENTITY_INFO = utf8('identity')
 
@@ -94,36 +91,74 @@ export function createSaltDeriver(sha256: Sha256, blindingKey: Uint8Array): (ref
   }
 }
 
-/** SHA256(0x03 || labelSalt || label) (section 1). */
+/** SHA256(0x03 || labelSalt || label) (section 1). Throws a RangeError for a lone surrogate. */
 export function labelCommitment(sha256: Sha256, labelSalt: Uint8Array, label: string): Uint8Array {
-  return sha256(concatBytes(LABEL, labelSalt, utf8(label)))
+  return createCommitter(sha256).label(labelSalt, label)
 }
 
 /** SHA256(0x04 || identitySalt || JCS(identity)) (section 1). */
 export function identityCommitment(sha256: Sha256, identitySalt: Uint8Array, identity: Identity): Uint8Array {
-  return sha256(concatBytes(IDENTITY, identitySalt, identityBytes(identity)))
+  return createCommitter(sha256).identity(identitySalt, identity)
 }
 
 /** SHA256(0x02 || labelCommit || identityCommit) (section 1). */
 export function entryCommitment(sha256: Sha256, labelCommit: Uint8Array, identityCommit: Uint8Array): Uint8Array {
-  const bytes = new Uint8Array(65)
-  bytes[0] = 2
-  bytes.set(labelCommit, 1)
-  bytes.set(identityCommit, 33)
-  return sha256(bytes)
+  return createCommitter(sha256).entry(labelCommit, identityCommit)
 }
 
 /** All commitments of an entrant (section 1). */
 export function commitEntrant(sha256: Sha256, salts: Salts, label: string, identity: Identity): Commitments {
-  const labelCommit = labelCommitment(sha256, salts.labelSalt, label)
-  const identityCommit = identityCommitment(sha256, salts.identitySalt, identity)
-  return { labelCommit, identityCommit, entryCommit: entryCommitment(sha256, labelCommit, identityCommit) }
+  return createCommitter(sha256).entrant(salts, label, identity)
+}
+
+/** The commitments of section 1 with buffers of their own, for many entrants one after the other. */
+export interface Committer {
+  label(labelSalt: Uint8Array, label: string): Uint8Array
+  identity(identitySalt: Uint8Array, identity: Identity): Uint8Array
+  entry(labelCommit: Uint8Array, identityCommit: Uint8Array): Uint8Array
+  entrant(salts: Salts, label: string, identity: Identity): Commitments
+}
+
+/** Makes a committer; its buffers grow with the longest text that it meets. */
+export function createCommitter(sha256: Sha256): Committer {
+  let buffer = new Uint8Array(2048)
+  const pair = new Uint8Array(65)
+  pair[0] = 2
+  const salted = (tag: number, salt: Uint8Array, text: string): Uint8Array => {
+    assertBytes(salt, 'salt', 32)
+    if (33 + 3 * text.length > buffer.length) buffer = new Uint8Array(33 + 6 * text.length)
+    buffer[0] = tag
+    buffer.set(salt, 1)
+    return sha256(buffer.subarray(0, writeUtf8(buffer, 33, text)))
+  }
+  const committer: Committer = {
+    label: (labelSalt, label) => salted(3, labelSalt, label),
+    identity: (identitySalt, identity) => salted(4, identitySalt, identityText(identity)),
+    entry(labelCommit, identityCommit) {
+      assertBytes(labelCommit, 'labelCommit', 32)
+      assertBytes(identityCommit, 'identityCommit', 32)
+      pair.set(labelCommit, 1)
+      pair.set(identityCommit, 33)
+      return sha256(pair)
+    },
+    entrant(salts, label, identity) {
+      const labelCommit = committer.label(salts.labelSalt, label)
+      const identityCommit = committer.identity(salts.identitySalt, identity)
+      return { labelCommit, identityCommit, entryCommit: committer.entry(labelCommit, identityCommit) }
+    },
+  }
+  return committer
 }
 
 /** JCS of an identity, spelt out because a list has a million of them: the members stand in JCS order. */
-function identityBytes(identity: Identity): Uint8Array {
-  const { contact, name, numbers, reference } = identity
-  if (Object.keys(identity).length !== 4) return canonicalBytes(identity)
-  const s = JSON.stringify
-  return utf8(`{"contact":${s(contact)},"name":${s(name)},"numbers":${s(numbers)},"reference":${s(reference)}}`)
+function identityText({ contact, name, numbers, reference }: Identity): string {
+  const s = quoted
+  return `{"contact":${s(contact)},"name":${s(name)},"numbers":${s(numbers)},"reference":${s(reference)}}`
+}
+
+/** JCS of a string (RFC 8785 section 3.2.2.2). */
+function quoted(text: string): string {
+  // JSON.stringify would spell a lone surrogate as an escape, which JCS forbids.
+  if (hasLoneSurrogate(text)) throw new RangeError('text holds a lone surrogate')
+  return JSON.stringify(text)
 }

@@ -2,8 +2,8 @@ import type { Sha256 } from '../bytes/hashing.ts'
 import { fail, ok, type Failure, type Result } from '../bytes/result.ts'
 import { textProblem, TEXT_PROBLEMS } from '../bytes/text.ts'
 import { buildSumTree, type SumTree } from '../merkle/sum-tree.ts'
-import { commitEntrant, compareReferences, createSaltDeriver, isReference, type Identity } from './commitments.ts'
-import { firstDuplicateCommit } from './entries-csv.ts'
+import { compareReferences, createCommitter, createSaltDeriver, isReference, type Identity } from './commitments.ts'
+import { firstDuplicateCommit } from './duplicates.ts'
 import { MAX_ENTRANTS, MAX_TICKETS, MAX_TICKETS_EACH } from './limits.ts'
 
 /** An entrant as it goes into a seal. Text is NFC already; `identity.reference` is the reference of this seal. */
@@ -49,6 +49,7 @@ export function prepareEntries(
   const reference = (i: number): string => (entrants[i] as SealEntrant).identity.reference
   order.sort((left, right) => compareReferences(reference(left), reference(right)))
   const salts = createSaltDeriver(sha256, blindingKey)
+  const committer = createCommitter(sha256)
   const tickets = new Float64Array(count)
   const entryCommits = new Uint8Array(count * 32)
   let total = 0
@@ -63,7 +64,7 @@ export function prepareEntries(
     total += entrant.tickets
     if (total > MAX_TICKETS) return fail('total-out-of-range', '', 'All tickets together pass 2^53 − 1.')
     tickets[leaf] = entrant.tickets
-    const commits = commitEntrant(sha256, salts(entrant.identity.reference), entrant.label, entrant.identity)
+    const commits = committer.entrant(salts(entrant.identity.reference), entrant.label, entrant.identity)
     entryCommits.set(commits.entryCommit, leaf * 32)
   }
   const twice = firstDuplicateCommit(entryCommits)
@@ -82,17 +83,22 @@ function entrantProblem(
   if (!isReference(identity.reference)) {
     return fail('reference-wrong', `[${index}].reference`, 'A reference has 8 to 64 characters of its alphabet.')
   }
-  for (const [name, value] of [
-    ['label', label],
-    ['name', identity.name],
-    ['contact', identity.contact],
-    ['numbers', identity.numbers],
-  ] as const) {
-    if (value === '' && (name === 'label' || name === 'name')) {
-      return fail('text-wrong', `[${index}].${name}`, `The ${name} is empty.`)
-    }
-    const problem = textProblem(value)
-    if (problem !== null) return fail('text-wrong', `[${index}].${name}`, `The ${name} ${TEXT_PROBLEMS[problem]}.`)
+  return (
+    textRefusal(label, index, 'label') ??
+    textRefusal(identity.name, index, 'name') ??
+    textRefusal(identity.contact, index, 'contact') ??
+    textRefusal(identity.numbers, index, 'numbers')
+  )
+}
+
+function textRefusal(
+  value: string,
+  index: number,
+  name: 'label' | 'name' | 'contact' | 'numbers',
+): { readonly ok: false; readonly error: Failure<EntrantsCode> } | null {
+  if (value === '' && (name === 'label' || name === 'name')) {
+    return fail('text-wrong', `[${index}].${name}`, `The ${name} is empty.`)
   }
-  return null
+  const problem = textProblem(value)
+  return problem === null ? null : fail('text-wrong', `[${index}].${name}`, `The ${name} ${TEXT_PROBLEMS[problem]}.`)
 }

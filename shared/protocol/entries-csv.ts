@@ -6,6 +6,7 @@ import { MAX_ENTRANTS, MAX_TICKETS, MAX_TICKETS_EACH } from './limits.ts'
 /** `entries.csv` (PROTOCOL section 9): a header, then a line for each leaf in order. */
 
 const HEADER = utf8('tickets,entry_commit\n')
+const HEX_DIGITS = utf8('0123456789abcdef')
 const LF = 0x0a
 const COMMA = 0x2c
 
@@ -31,11 +32,22 @@ export function entriesLine(tickets: number, entryCommit: Uint8Array): string {
 
 /** The whole file for leaves in their order; `entryCommits` holds 32 bytes a leaf. */
 export function writeEntries(tickets: ArrayLike<number>, entryCommits: Uint8Array): Uint8Array {
-  const parts: string[] = ['tickets,entry_commit\n']
-  for (let i = 0; i < tickets.length; i += 1) {
-    parts.push(entriesLine(tickets[i] as number, entryCommits.subarray(i * 32, (i + 1) * 32)))
+  // At most 10 digits, a comma, 64 hex digits and a line feed a leaf.
+  const bytes = new Uint8Array(HEADER.length + tickets.length * 76)
+  bytes.set(HEADER)
+  let at = HEADER.length
+  for (let leaf = 0; leaf < tickets.length; leaf += 1) {
+    const count = String(tickets[leaf])
+    for (let i = 0; i < count.length; i += 1) bytes[at++] = count.charCodeAt(i)
+    bytes[at++] = COMMA
+    for (let i = leaf * 32; i < leaf * 32 + 32; i += 1) {
+      const byte = entryCommits[i] as number
+      bytes[at++] = HEX_DIGITS[byte >> 4] as number
+      bytes[at++] = HEX_DIGITS[byte & 15] as number
+    }
+    bytes[at++] = LF
   }
-  return utf8(parts.join(''))
+  return bytes.subarray(0, at)
 }
 
 /** Receives a leaf. `entryCommit` is the parser's own buffer: copy what must stay. */
@@ -156,15 +168,4 @@ export function parseEntries(bytes: Uint8Array): Result<Entries, Failure<Entries
     entryCommits: entryCommits.subarray(0, leaves * 32),
     total: end.value.tickets,
   })
-}
-
-/** Index of the first leaf whose commitment stood before (section 1: no two are equal), or null. 32 bytes a leaf. */
-export function firstDuplicateCommit(entryCommits: Uint8Array): number | null {
-  const seen = new Set<string>()
-  for (let leaf = 0; leaf * 32 < entryCommits.length; leaf += 1) {
-    const key = String.fromCharCode(...entryCommits.subarray(leaf * 32, leaf * 32 + 32))
-    if (seen.has(key)) return leaf
-    seen.add(key)
-  }
-  return null
 }
