@@ -4,7 +4,7 @@ import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { randomBytes } from 'node:crypto'
 import { createTestDatabase } from './test-database.mjs'
-import { localEnvironment } from './environment.mjs'
+import { localEnvironment, siteAddress, testEnvironment } from './environment.mjs'
 import { ensureKeys } from './keys.mjs'
 import { ensureBuild } from './npm-steps.mjs'
 import { freePortsForAll } from './ports.mjs'
@@ -27,7 +27,7 @@ export async function browserStack(env) {
     onFirst: () => endRunning('SIGTERM'),
     onSecond: () => endRunning('SIGKILL'),
   })
-  listenForSignals(receive)
+  listenForSignals(receive, env)
   // The runner may die without a word: its end of the pipe closes with it.
   process.stdin.resume().on('end', () => receive('the end of standard input'))
   let code = 0
@@ -44,8 +44,7 @@ export async function browserStack(env) {
     }
     const databaseUrl = await createTestDatabase(clusterUrl, `browser_${randomBytes(6).toString('hex')}`)
     const ports = await freePortsForAll()
-    const environment = localEnvironment({ base: env, data, ports, databaseUrl, dev: false })
-    delete environment.EVENPENNY_TEST_DATABASE_URL
+    const environment = localEnvironment({ base: testEnvironment(env), data, ports, databaseUrl, dev: false })
     await migrate(ROOT, environment)
     const stack = makeStack({ root: ROOT, env: environment, ports, logs: join(data, 'logs'), onTrouble: say })
     cleanUps.push(stack.stop)
@@ -57,7 +56,7 @@ export async function browserStack(env) {
     await Promise.race([starting(), stack.failure, interrupted])
     const local = (/** @type {number} */ port) => `http://127.0.0.1:${port}`
     const addresses = {
-      site: local(ports.site),
+      site: siteAddress(ports),
       mailPage: local(ports.mailPage),
       beacon: local(ports.beacon),
       s3: local(ports.s3),

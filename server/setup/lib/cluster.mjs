@@ -92,11 +92,9 @@ export async function startCluster(cluster, settings = []) {
  * @returns {Promise<boolean>} false when it did not stop within half a minute
  */
 export async function stopCluster(cluster, mode = 'fast') {
-  if (serverPid(cluster.place) === null) return true
+  if (!serverRuns(cluster.place)) return true
   const args = ['-D', clusterFolder(cluster.place), '-m', mode, '-w', '-t', '30', 'stop']
-  return (
-    (await runProgram(cluster, 'pg_ctl', args, { whileStopping: true })).code === 0 || serverPid(cluster.place) === null
-  )
+  return (await runProgram(cluster, 'pg_ctl', args, { whileStopping: true })).code === 0 || !serverRuns(cluster.place)
 }
 
 /**

@@ -51,3 +51,19 @@ export function localEnvironment({ base, data, ports, databaseUrl, dev }) {
     EVENPENNY_FAKE_BEACON_PORT: String(ports.beacon),
   }
 }
+
+/**
+ * Where the site is opened; server/config takes the same for its own address.
+ * @param {Ports} ports
+ */
+export const siteAddress = (ports) => `http://localhost:${ports.site}`
+
+/**
+ * A person's own environment without what would lead tests to a real service, or npm's scripts astray.
+ * @param {NodeJS.ProcessEnv} env
+ * @returns {NodeJS.ProcessEnv}
+ */
+export function testEnvironment(env) {
+  const kept = Object.entries(env).filter(([name]) => !/^(npm_|EVENPENNY_|PG)/i.test(name) && name !== 'NODE_ENV')
+  return { ...Object.fromEntries(kept), FORCE_COLOR: '0' }
+}

@@ -17,7 +17,7 @@ const APP = { role: 'evenpenny', database: 'evenpenny' }
  * @param {import('./ports.mjs').Ports} ports
  * @param {(line: string) => void} say
  * @param {(cluster: Cluster) => void} onStarting called before it is started, so that it can be stopped
- * @returns {Promise<{ cluster: Cluster, url: string }>} url signs in as the product
+ * @returns {Promise<{ cluster: Cluster, url: string, isNew: boolean }>} url signs in as the product; isNew: it was made now
  */
 export async function startProjectCluster(dataFolder, ports, say, onStarting) {
   const user = await postgresUser()
@@ -48,5 +48,5 @@ export async function startProjectCluster(dataFolder, ports, say, onStarting) {
   onStarting(cluster)
   await startCluster(cluster)
   await ensureDatabase(cluster, app)
-  return { cluster, url: databaseUrl(cluster, app) }
+  return { cluster, url: databaseUrl(cluster, app), isNew: state.state === 'absent' }
 }

@@ -5,6 +5,7 @@ import { connect } from 'node:net'
 import { createInterface } from 'node:readline'
 import { endGroup } from './run.mjs'
 import { readLogLine } from './log-lines.mjs'
+import { SetupProblem } from './problem.mjs'
 
 const LOG_LIMIT = 10 * 1024 * 1024
 const KEPT_LINES = 30
@@ -110,7 +111,7 @@ export async function waitReady(service, ready, timeoutMs) {
 }
 
 /** A service that ended by itself or never became ready; the message carries its last log lines. */
-export class ServiceEnded extends Error {
+export class ServiceEnded extends SetupProblem {
   /** @param {Service} service @param {string} what */
   constructor(service, what) {
     const lines = service.tail()

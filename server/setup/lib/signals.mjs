@@ -41,7 +41,19 @@ export function interruption({ onFirst, onSecond, now = Date.now }) {
   return { interrupted, isInterrupted: () => first !== null, receive }
 }
 
-/** @param {(signal: string) => void} receive */
-export function listenForSignals(receive) {
+/**
+ * Listens for what asks a program to stop: the signals, and the end of npm, which does not pass every signal on.
+ * @param {(signal: string) => void} receive
+ * @param {NodeJS.ProcessEnv} env
+ */
+export function listenForSignals(receive, env) {
   for (const signal of /** @type {const} */ (['SIGINT', 'SIGTERM', 'SIGHUP'])) process.on(signal, () => receive(signal))
+  if (!env.npm_lifecycle_event) return
+  const parent = process.ppid
+  const timer = setInterval(() => {
+    if (process.ppid === parent) return
+    clearInterval(timer)
+    receive('the end of npm')
+  }, 500)
+  timer.unref()
 }

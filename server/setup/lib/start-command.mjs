@@ -13,6 +13,7 @@ import { startProjectCluster } from './project-cluster.mjs'
 import { ROOT } from './root.mjs'
 import { endRunning } from './run.mjs'
 import { takeRunLock } from './run-lock.mjs'
+import { ServiceEnded } from './service.mjs'
 import { interruption, listenForSignals } from './signals.mjs'
 import { makeStack, migrate, seedDemo } from './stack.mjs'
 import { welcome } from './welcome.mjs'
@@ -41,7 +42,7 @@ export async function startCommand(args, env) {
       held.release(true).finally(() => process.exit(1))
     },
   })
-  listenForSignals(receive)
+  listenForSignals(receive, env)
 
   let code = 0
   try {
@@ -106,7 +107,7 @@ async function setUpAndRun(args, env, say, held, interrupted) {
 
   await installDebianPackages(findPostgres().length === 0 ? ['postgresql'] : [], say)
   await ensurePackages(ROOT, say)
-  const { cluster, url } = await startProjectCluster(data, ports, say, (starting) => {
+  const { cluster, url, isNew } = await startProjectCluster(data, ports, say, (starting) => {
     held.add((atOnce) => stopCluster(starting, atOnce ? 'immediate' : 'fast'))
   })
   const environment = localEnvironment({ base: env, data, ports, databaseUrl: url, dev: args.includes('--dev') })
@@ -127,12 +128,16 @@ async function setUpAndRun(args, env, say, held, interrupted) {
   })
   const serving = async () => {
     await stack.startFakes()
-    await seedOnce(data, environment, say)
+    await seedOnce(data, isNew, environment, say)
     await stack.startWorkerAndSite()
     say(welcome({ data: relative(process.cwd(), data) || '.', ports, signIns: readSignIns(data) }))
     return databaseEnds(cluster.place)
   }
-  await Promise.race([serving(), stack.failure, interrupted])
+  await Promise.race([serving(), stack.failure, interrupted]).catch((error) => {
+    // The services end too when their database does: name the cause first.
+    if (!(error instanceof ServiceEnded) || serverRuns(cluster.place)) throw error
+    throw new SetupProblem(`${databaseEnded(cluster.place)}\n${error.message}`)
+  })
   throw new Error('Nothing holds the services any more.')
 }
 
@@ -153,12 +158,13 @@ function makeDataFolder(data) {
 /**
  * Makes the demo data unless an earlier start has finished doing so.
  * @param {string} data
+ * @param {boolean} isNew the database is, whatever the data folder remembers
  * @param {NodeJS.ProcessEnv} environment
  * @param {Say} say
  */
-async function seedOnce(data, environment, say) {
+async function seedOnce(data, isNew, environment, say) {
   const mark = join(data, 'demo-made')
-  if (existsSync(mark)) return
+  if (existsSync(mark) && !isNew) return
   say('Making the demo data.')
   await seedDemo(ROOT, environment)
   writeFileSync(mark, '')
@@ -174,7 +180,7 @@ function databaseEnds(place) {
     const timer = setInterval(() => {
       if (serverRuns(place)) return
       clearInterval(timer)
-      reject(new SetupProblem(`PostgreSQL has ended by itself. Its log is ${serverLog(place)}.`))
+      reject(new SetupProblem(databaseEnded(place)))
     }, 1000)
     timer.unref()
   })
@@ -185,3 +191,6 @@ function readSignIns(data) {
   const file = join(data, 'demo-sign-ins.json')
   return existsSync(file) ? JSON.parse(readFileSync(file, 'utf8')) : []
 }
+
+/** @param {string} place */
+const databaseEnded = (place) => `PostgreSQL has ended by itself. Its log is ${serverLog(place)}.`

@@ -4,6 +4,7 @@ import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { addCounts, closingLine, oneFailed } from './counts.mjs'
 import { installDebianPackages, missingBrowserPackages } from './debian.mjs'
+import { testEnvironment } from './environment.mjs'
 import { ensureBuild, ensurePackages } from './npm-steps.mjs'
 import { findPostgres } from './postgres-programs.mjs'
 import { describeFailure } from './problem.mjs'
@@ -40,7 +41,7 @@ export async function testCommand(args, env) {
     },
     onSecond: () => endRunning('SIGKILL'),
   })
-  listenForSignals(receive)
+  listenForSignals(receive, env)
   for (const event of /** @type {const} */ (['uncaughtException', 'unhandledRejection'])) {
     process.on(event, (error) => {
       say(`The test script itself failed:\n${describeFailure(error)}`)
@@ -90,14 +91,4 @@ async function runParts(args, env, say, results, cleanUps, isInterrupted) {
     if (isInterrupted()) return
     results.push(await runPart(part, { root: ROOT, reports, env: testEnv, patterns, say }))
   }
-}
-
-/**
- * The person's own environment without what would lead the tests to a real service, or npm's scripts astray.
- * @param {NodeJS.ProcessEnv} env
- * @returns {NodeJS.ProcessEnv}
- */
-export function testEnvironment(env) {
-  const kept = Object.entries(env).filter(([name]) => !/^(npm_|EVENPENNY_|PG)/i.test(name) && name !== 'NODE_ENV')
-  return { ...Object.fromEntries(kept), FORCE_COLOR: '0' }
 }

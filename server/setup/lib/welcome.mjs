@@ -1,4 +1,6 @@
 // @ts-check
+import { siteAddress } from './environment.mjs'
+
 /** @typedef {{ role: string, name: string, email: string, password: string, organisation: string | null }} SignIn */
 
 /**
@@ -11,8 +13,8 @@
 export function welcome({ data, ports, signIns }) {
   const lines = [
     '',
-    `Evenpenny runs. Open  http://127.0.0.1:${ports.site}/`,
-    `Its mail is read at   http://127.0.0.1:${ports.mailPage}/  (nothing leaves this machine)`,
+    `Evenpenny runs. Open  ${siteAddress(ports)}/`,
+    `Its mail is read at   http://localhost:${ports.mailPage}/  (no mail leaves this machine)`,
     `Logs and data are in  ${data}`,
   ]
   if (signIns.length > 0) {

@@ -2,11 +2,10 @@ import { mkdtempSync, readFileSync, rmSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { afterEach, beforeEach, describe, expect, it } from 'vitest'
-import { localEnvironment, ownServicesProblem } from '#server/setup/lib/environment.mjs'
+import { localEnvironment, ownServicesProblem, testEnvironment } from '#server/setup/lib/environment.mjs'
 import { readLogLine } from '#server/setup/lib/log-lines.mjs'
 import { startService, waitReady } from '#server/setup/lib/service.mjs'
 import { interruption } from '#server/setup/lib/signals.mjs'
-import { testEnvironment } from '#server/setup/lib/test-command.mjs'
 import { welcome } from '#server/setup/lib/welcome.mjs'
 
 const ports = { site: 1, database: 2, s3: 3, smtp: 4, mailPage: 5, beacon: 6 }
@@ -76,8 +75,8 @@ describe('welcome', () => {
       { role: 'administrator', name: 'B', email: 'b@site.example', password: 'longer', organisation: null },
     ]
     const text = welcome({ data: '.data', ports, signIns })
-    expect(text).toContain('http://127.0.0.1:1/')
-    expect(text).toContain('http://127.0.0.1:5/')
+    expect(text).toContain('http://localhost:1/')
+    expect(text).toContain('http://localhost:5/')
     expect(text).toContain('  promoter       a@one.example   pw        A     One\n')
     expect(welcome({ data: '.data', ports, signIns: [] })).not.toContain('sign-ins')
   })
