@@ -104,7 +104,7 @@ async function siteKey(parts: FileParts, slug: string, fingerprint: string): Pro
   if (key) return ofBytes('application/x-pem-file', utf8(key.publicKeyPem))
   const row = await storedArchive(parts.db, slug)
   if (!row) return null
-  return parts.archives.use(row, async ({ zip }) => {
+  return parts.archives.use(row, async (zip) => {
     const chunks: Uint8Array[] = []
     for await (const chunk of zip.open('site-key.pem')) chunks.push(chunk)
     return ofBytes('application/x-pem-file', Buffer.concat(chunks))
@@ -117,7 +117,7 @@ async function sendProof(parts: FileParts, slug: string, request: Request, respo
   const labels = await labelsOf(parts.db, row.drawId)
   const tag = createHash('sha256').update(`${row.sha256}\n`).update(labels).digest('hex')
   await parts.archives.use(row, async (locked) => {
-    const { size, chunks } = await proofZip(locked, labels)
+    const { size, chunks } = await proofZip(locked, new Map(Object.entries(row.members)), labels)
     const found: Found = { type: 'application/zip', tag, size, chunks: () => chunks }
     await sendFile(found, `${slug}-proof.zip`, request, response)
   })

@@ -7,20 +7,16 @@ import { Transform } from 'node:stream'
 import { pipeline } from 'node:stream/promises'
 import { openFileSource } from '#server/adapters/archive/file-source.ts'
 import { inflateWithZlib } from '#server/adapters/archive/zlib-codec.ts'
-import { createSha256 } from '#server/adapters/archive/check-tools.ts'
 import type { ObjectStore } from '#server/adapters/object-store/object-store.ts'
 import { openZip, type ZipSource } from '#shared/archive/zip-reader.ts'
-import { digestOf } from '#shared/archive/sums.ts'
 
-/** A locked archive, fetched and found to be the very one that the database tells of. */
-export interface LockedArchive {
+interface OpenArchive {
   readonly zip: ZipSource
-  /** SHA-256 of each member, in hex. */
-  readonly digests: ReadonlyMap<string, string>
+  close(): Promise<void>
 }
 
 interface Held {
-  readonly opened: Promise<LockedArchive & { close(): Promise<void> }>
+  readonly opened: Promise<OpenArchive>
   users: number
   usedAt: number
 }
@@ -44,12 +40,12 @@ export class LockedArchives {
    */
   async use<T>(
     row: { readonly key: string; readonly sha256: string; readonly bytes: number },
-    work: (archive: LockedArchive) => Promise<T>,
+    work: (zip: ZipSource) => Promise<T>,
   ): Promise<T> {
     const held = this.#hold(row)
     held.users++
     try {
-      return await work(await held.opened)
+      return await work((await held.opened).zip)
     } finally {
       held.users--
       held.usedAt = performance.now()
@@ -88,7 +84,7 @@ export class LockedArchives {
     }
   }
 
-  async #fetch(key: string, sha256: string) {
+  async #fetch(key: string, sha256: string): Promise<OpenArchive> {
     this.#folder ??= mkdtemp(join(tmpdir(), 'evenpenny-archives-'))
     const path = join(await this.#folder, `${sha256}.zip`)
     const found = await this.#store.get(key)
@@ -108,10 +104,7 @@ export class LockedArchives {
       await rm(path, { force: true })
     }
     try {
-      const zip = await openZip(source, { inflate: inflateWithZlib })
-      const digests = new Map<string, string>()
-      for (const name of zip.names) digests.set(name, await digestOf(zip.open(name), createSha256()))
-      return { zip, digests, close }
+      return { zip: await openZip(source, { inflate: inflateWithZlib }), close }
     } catch (error) {
       await close()
       throw error

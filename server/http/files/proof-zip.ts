@@ -1,9 +1,9 @@
 import { deflateRawSync } from 'node:zlib'
 import { createSha256 } from '#server/adapters/archive/check-tools.ts'
-import type { LockedArchive } from '#server/http/files/locked-archives.ts'
 import { crc32 } from '#shared/archive/crc32.ts'
 import { proofMember, publicFromLocked, sumMember } from '#shared/archive/proof-archive.ts'
 import { zipSize } from '#shared/archive/zip-size.ts'
+import type { ZipSource } from '#shared/archive/zip-reader.ts'
 import { type PackedZipMember, writeZip, type ZipMember } from '#shared/archive/zip-writer.ts'
 
 export interface ProofZip {
@@ -13,11 +13,18 @@ export interface ProofZip {
   readonly chunks: AsyncIterable<Uint8Array>
 }
 
-/** The public proof archive: the locked one's members as they are packed, the labels of today, and the sums over all. */
-export async function proofZip(locked: LockedArchive, labels: Uint8Array): Promise<ProofZip> {
+/**
+ * The public proof archive: the locked one's members as they are packed, the labels of today, and the sums over all.
+ * `digests` holds the SHA-256 of each locked member, in hex.
+ */
+export async function proofZip(
+  locked: ZipSource,
+  digests: ReadonlyMap<string, string>,
+  labels: Uint8Array,
+): Promise<ProofZip> {
   const summed = await sumMember(proofMember('labels.jsonl', labels), createSha256())
   const members: PackedZipMember[] = []
-  for (const member of publicFromLocked(locked.zip, locked.digests, summed)) {
+  for (const member of publicFromLocked(locked, digests, summed)) {
     members.push('openPacked' in member ? member : await packed(member))
   }
   return { size: zipSize(members), chunks: writeZip(members) }

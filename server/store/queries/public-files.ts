@@ -94,6 +94,7 @@ export async function storedArchive(db: Database, slug: string) {
       key: archive.key,
       bytes: archive.bytes,
       sha256: archive.sha256,
+      members: archive.members,
       verifiedAt: archive.verifiedAt,
     })
     .from(archive)

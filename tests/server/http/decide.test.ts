@@ -25,21 +25,98 @@ const draw = (state: Resource['organisation']['state']): Resource => ({
   draw: { id: 'draw-1', witnesses: ['named'] },
 })
 
-const answer = (permission: Permission, actor: Actor, resource: Resource | null, on: 'draw' | 'organisation' = 'draw') => {
+const answer = (
+  permission: Permission,
+  actor: Actor,
+  resource: Resource | null,
+  on: 'draw' | 'organisation' = 'draw',
+) => {
   const decision = decide({ permission, on }, actor, resource)
   return decision.allowed ? 200 : decision.status
 }
 
 /** The may-table of the product, spelt out by hand: role, then each permission on a draw of an approved organisation. */
 const table: Record<string, Partial<Record<Permission, number>>> = {
-  anonymous: { visit: 200, 'list-draws': 401, 'read-draw': 401, 'read-entrants': 401, edit: 401, run: 401, witness: 401, administer: 401 },
-  'without a role': { visit: 200, 'list-draws': 404, 'read-draw': 404, 'read-entrants': 404, edit: 404, run: 404, witness: 404, administer: 404 },
-  organiser: { visit: 200, 'list-draws': 200, 'read-draw': 200, 'read-entrants': 200, edit: 200, run: 403, witness: 403, administer: 403 },
-  promoter: { visit: 200, 'list-draws': 200, 'read-draw': 200, 'read-entrants': 200, edit: 200, run: 200, witness: 403, administer: 403 },
-  'witness of the organisation': { visit: 200, 'list-draws': 200, 'read-draw': 403, 'read-entrants': 403, edit: 403, run: 403, witness: 403, administer: 403 },
-  'named witness': { visit: 200, 'list-draws': 403, 'read-draw': 200, 'read-entrants': 403, edit: 403, run: 403, witness: 200, administer: 403 },
-  'promoter of another organisation': { visit: 200, 'list-draws': 404, 'read-draw': 404, 'read-entrants': 404, edit: 404, run: 404, witness: 404, administer: 404 },
-  administrator: { visit: 200, 'list-draws': 200, 'read-draw': 403, 'read-entrants': 403, edit: 403, run: 403, witness: 403, administer: 200 },
+  anonymous: {
+    visit: 200,
+    'list-draws': 401,
+    'read-draw': 401,
+    'read-entrants': 401,
+    edit: 401,
+    run: 401,
+    witness: 401,
+    administer: 401,
+  },
+  'without a role': {
+    visit: 200,
+    'list-draws': 404,
+    'read-draw': 404,
+    'read-entrants': 404,
+    edit: 404,
+    run: 404,
+    witness: 404,
+    administer: 404,
+  },
+  organiser: {
+    visit: 200,
+    'list-draws': 200,
+    'read-draw': 200,
+    'read-entrants': 200,
+    edit: 200,
+    run: 403,
+    witness: 403,
+    administer: 403,
+  },
+  promoter: {
+    visit: 200,
+    'list-draws': 200,
+    'read-draw': 200,
+    'read-entrants': 200,
+    edit: 200,
+    run: 200,
+    witness: 403,
+    administer: 403,
+  },
+  'witness of the organisation': {
+    visit: 200,
+    'list-draws': 200,
+    'read-draw': 403,
+    'read-entrants': 403,
+    edit: 403,
+    run: 403,
+    witness: 403,
+    administer: 403,
+  },
+  'named witness': {
+    visit: 200,
+    'list-draws': 403,
+    'read-draw': 200,
+    'read-entrants': 403,
+    edit: 403,
+    run: 403,
+    witness: 200,
+    administer: 403,
+  },
+  'promoter of another organisation': {
+    visit: 200,
+    'list-draws': 404,
+    'read-draw': 404,
+    'read-entrants': 404,
+    edit: 404,
+    run: 404,
+    witness: 404,
+    administer: 404,
+  },
+  administrator: {
+    visit: 200,
+    'list-draws': 200,
+    'read-draw': 403,
+    'read-entrants': 403,
+    edit: 403,
+    run: 403,
+    witness: 403,
+    administer: 200,
+  },
 }
 
 describe('decide', () => {
@@ -47,7 +124,10 @@ describe('decide', () => {
     it(`gives ${role} exactly what the may-table says`, () => {
       const actor = roles[role] as Actor
       const found = Object.fromEntries(
-        Object.keys(expected).map((permission) => [permission, answer(permission as Permission, actor, draw('approved'))]),
+        Object.keys(expected).map((permission) => [
+          permission,
+          answer(permission as Permission, actor, draw('approved')),
+        ]),
       )
       expect(found).toEqual(expected)
     })

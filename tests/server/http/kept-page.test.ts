@@ -6,7 +6,12 @@ import { KeptPage } from '#server/http/pages/kept-page.ts'
 const made = newNonce()
 const html = (nonce: string) =>
   `<html><script nonce="${nonce}">1</script>${'<p>The first prize went to ticket 17.</p>'.repeat(500)}<script nonce="${nonce}">é</script></html>`
-const page = new KeptPage(200, [['Content-Security-Policy', `script-src 'nonce-${made}'`]], Buffer.from(html(made)), made)
+const page = new KeptPage(
+  200,
+  [['Content-Security-Policy', `script-src 'nonce-${made}'`]],
+  Buffer.from(html(made)),
+  made,
+)
 
 describe('KeptPage', () => {
   it('puts the new nonce into every place, and nothing else changes', () => {
