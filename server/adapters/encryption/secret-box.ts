@@ -1,7 +1,7 @@
-import { createCipheriv, createDecipheriv, createSecretKey, type KeyObject } from 'node:crypto'
-import { systemEntropy, type Entropy } from '../entropy/entropy.ts'
+import { type Entropy, systemEntropy } from '../entropy/entropy.ts'
+import { gcmOpen, gcmSeal, nonceLength, tagLength } from './aes-gcm.ts'
 
-/** AES-256-GCM (NIST SP 800-38D) for small secrets at rest: seeds, blinding keys, mails that wait. */
+/** Encryption of small secrets at rest: seeds, blinding keys, mails that wait. */
 
 export interface EncryptionKey {
   /** 1 to 32 of a-z, 0-9 and the hyphen; stands in clear text with every secret. */
@@ -36,8 +36,6 @@ export interface SecretBox {
 }
 
 const version = 1
-const nonceLength = 12
-const tagLength = 16
 
 /**
  * Stored form: version (1 byte), length of the key's id (1), id, nonce (12, random: SP 800-38D section 8.2.2 allows
@@ -46,12 +44,12 @@ const tagLength = 16
  *   of 32 bytes.
  */
 export function createSecretBox(keys: readonly EncryptionKey[], entropy: Entropy = systemEntropy): SecretBox {
-  const byId = new Map<string, KeyObject>()
+  const byId = new Map<string, Uint8Array>()
   for (const { id, key } of keys) {
     if (!/^[a-z0-9-]{1,32}$/.test(id)) throw new Error(`The id of an encryption key must be a-z, 0-9 and "-": "${id}".`)
     if (key.length !== 32) throw new Error(`The encryption key "${id}" must have 32 bytes; it has ${key.length}.`)
     if (byId.has(id)) throw new Error(`There are two encryption keys with the id "${id}".`)
-    byId.set(id, createSecretKey(key))
+    byId.set(id, Uint8Array.from(key))
   }
   const [first] = byId
   if (!first) throw new Error('There must be an encryption key.')
@@ -65,39 +63,32 @@ export function createSecretBox(keys: readonly EncryptionKey[], entropy: Entropy
     return {
       id: Buffer.from(sealed.subarray(2, nonceAt)).toString('latin1'),
       nonce: sealed.subarray(nonceAt, nonceAt + nonceLength),
-      ciphertext: sealed.subarray(nonceAt + nonceLength, sealed.length - tagLength),
-      tag: sealed.subarray(sealed.length - tagLength),
+      content: sealed.subarray(nonceAt + nonceLength),
     }
   }
 
   return {
     seal(secret, context) {
       const nonce = entropy.bytes(nonceLength)
-      const cipher = createCipheriv('aes-256-gcm', firstKey, nonce, { authTagLength: tagLength })
-      cipher.setAAD(associatedData(firstId, context))
-      const ciphertext = Buffer.concat([cipher.update(secret), cipher.final()])
+      const content = gcmSeal({ key: firstKey, nonce, associated: associatedData(firstId, context) }, secret)
       const head = Buffer.from([version, firstId.length])
-      return new Uint8Array(Buffer.concat([head, Buffer.from(firstId), nonce, ciphertext, cipher.getAuthTag()]))
+      return new Uint8Array(Buffer.concat([head, Buffer.from(firstId), nonce, content]))
     },
     open(sealed, context) {
-      const { id, nonce, ciphertext, tag } = read(sealed)
+      const { id, nonce, content } = read(sealed)
       const key = byId.get(id)
       if (!key)
         throw new SecretError(
           'unknown-key',
           `A secret is encrypted under the key "${id}", which is not among the configured ones. Put it back into EVENPENNY_ENCRYPTION_KEYS.`,
         )
-      const decipher = createDecipheriv('aes-256-gcm', key, nonce, { authTagLength: tagLength })
-      decipher.setAAD(associatedData(id, context))
-      decipher.setAuthTag(tag)
-      try {
-        return new Uint8Array(Buffer.concat([decipher.update(ciphertext), decipher.final()]))
-      } catch {
+      const secret = gcmOpen({ key, nonce, associated: associatedData(id, context) }, content)
+      if (!secret)
         throw new SecretError(
           'refused',
           `A secret under the key "${id}" does not open as ${context}: it was changed or moved, or the key of this id is another one.`,
         )
-      }
+      return secret
     },
     isOld: (sealed) => read(sealed).id !== firstId,
   }
