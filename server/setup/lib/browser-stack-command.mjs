@@ -34,7 +34,7 @@ export async function browserStack(env) {
   try {
     const data = mkdtempSync(join(tmpdir(), 'evenpenny-e2e-'))
     cleanUps.push(async () => rmSync(data, { recursive: true, force: true }))
-    ensureKeys(data, false)
+    ensureKeys(data, null)
     await ensureBuild(ROOT, say)
     let clusterUrl = env.EVENPENNY_TEST_DATABASE_URL
     if (!clusterUrl) {
@@ -44,7 +44,9 @@ export async function browserStack(env) {
     }
     const databaseUrl = await createTestDatabase(clusterUrl, `browser_${randomBytes(6).toString('hex')}`)
     const ports = await freePortsForAll()
-    const environment = localEnvironment({ base: testEnvironment(env), data, ports, databaseUrl, dev: false })
+    // Specs may hold the beacon back and let it go.
+    const base = { ...testEnvironment(env), EVENPENNY_FAKE_CONTROL: 'yes' }
+    const environment = localEnvironment({ base, data, ports, databaseUrl, dev: false })
     await migrate(ROOT, environment)
     const stack = makeStack({ root: ROOT, env: environment, ports, logs: join(data, 'logs'), onTrouble: say })
     cleanUps.push(stack.stop)

@@ -24,14 +24,16 @@ export const keysFolder = (dataFolder) => join(dataFolder, 'keys')
 /**
  * Makes the key files that are missing, readable by this user alone.
  * @param {string} dataFolder
- * @param {boolean} hasDatabase whether the data folder already holds a database; then none may be missing, since new keys
- *   would not open what the old ones closed
+ * @param {string | null} database folder of the data folder's database where there is one already; then none may be
+ *   missing, since new keys would not open what the old ones closed
  */
-export function ensureKeys(dataFolder, hasDatabase) {
+export function ensureKeys(dataFolder, database) {
   const folder = keysFolder(dataFolder)
   mkdirSync(folder, { recursive: true, mode: 0o700 })
   const missing = Object.keys(KEY_FILES).filter((name) => !existsSync(join(folder, name)))
-  if (missing.length > 0 && hasDatabase) throw new SetupProblem(missingKeysProblem(dataFolder, missing))
+  if (missing.length > 0 && database !== null) {
+    throw new SetupProblem(missingKeysProblem(dataFolder, database, missing))
+  }
   for (const name of missing) {
     const content = /** @type {() => string} */ (KEY_FILES[name])()
     // The name appears only with the whole content behind it.
@@ -41,12 +43,14 @@ export function ensureKeys(dataFolder, hasDatabase) {
   }
 }
 
-/** @param {string} dataFolder @param {readonly string[]} missing */
-export function missingKeysProblem(dataFolder, missing) {
+/** @param {string} dataFolder @param {string} database @param {readonly string[]} missing */
+export function missingKeysProblem(dataFolder, database, missing) {
+  const folders = database.startsWith(`${dataFolder}/`) ? [dataFolder] : [dataFolder, database]
+  const moves = folders.map((folder) => `\n  mv ${folder} ${folder}-without-keys`).join('')
   return (
-    `${dataFolder} holds a database, but ${missing.join(', ')} ${missing.length === 1 ? 'is' : 'are'} missing from ` +
+    `There is a database in ${database}, but ${missing.join(', ')} ${missing.length === 1 ? 'is' : 'are'} missing from ` +
     `${keysFolder(dataFolder)}. New keys would not open what the old ones closed. Put them back from a copy, ` +
-    `or move the whole folder away and start anew:\n  mv ${dataFolder} ${dataFolder}-without-keys`
+    `or move everything away and start anew:${moves}`
   )
 }
 

@@ -4,13 +4,14 @@ import { readdirSync, readFileSync, readlinkSync } from 'node:fs'
 /**
  * When a process began, in clock ticks since the machine did: with its number, a name that is never used twice.
  * @param {number} pid
- * @returns {string | null} null when there is no such process
+ * @returns {string | null} null when there is no such process, or only its entry that nobody has collected yet
  */
 export function startOf(pid) {
   try {
     // proc(5): field 22, counted from behind the command, which may itself hold spaces and brackets.
     const stat = readFileSync(`/proc/${pid}/stat`, 'utf8')
-    return stat.slice(stat.lastIndexOf(')') + 2).split(' ')[19] ?? null
+    const fields = stat.slice(stat.lastIndexOf(')') + 2).split(' ')
+    return fields[0] === 'Z' || fields[0] === 'X' ? null : (fields[19] ?? null)
   } catch {
     return null
   }

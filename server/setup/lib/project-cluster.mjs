@@ -24,7 +24,7 @@ export async function startProjectCluster(dataFolder, ports, say, onStarting) {
   const place = await clusterPlace(dataFolder, user, say)
   const state = inspectPlace(place)
   if (state.state === 'half-made') throw new SetupProblem(halfMadeProblem(place, state.found))
-  ensureKeys(dataFolder, state.state === 'made')
+  ensureKeys(dataFolder, state.state === 'made' ? place : null)
   const programs = choosePostgres(findPostgres(), state.state === 'made' ? state.major : null, place)
   const cluster = {
     place,

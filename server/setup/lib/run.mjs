@@ -102,7 +102,8 @@ export function run(program, args, options = {}) {
 }
 
 /**
- * Sends a signal to a process, or to a group when the number is negative; one that has ended is no error.
+ * Sends a signal to a process, or to a group when the number is negative. One that has ended is no error, nor is one that
+ * belongs to root by way of sudo: that one gets its signal from the terminal.
  * @param {number} pid
  * @param {NodeJS.Signals} signal
  */
@@ -110,7 +111,8 @@ export function endGroup(pid, signal) {
   try {
     process.kill(pid, signal)
   } catch (error) {
-    if (/** @type {NodeJS.ErrnoException} */ (error).code !== 'ESRCH') throw error
+    const { code } = /** @type {NodeJS.ErrnoException} */ (error)
+    if (code !== 'ESRCH' && code !== 'EPERM') throw error
   }
 }
 

@@ -4,7 +4,7 @@ import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { afterEach, beforeEach, describe, expect, it } from 'vitest'
 import { halfMadeProblem, inspectPlace, outsidePlace } from '#server/setup/lib/cluster-place.mjs'
-import { ensureKeys, KEY_FILES, readKey } from '#server/setup/lib/keys.mjs'
+import { ensureKeys, KEY_FILES, missingKeysProblem, readKey } from '#server/setup/lib/keys.mjs'
 import { markOf, processesIn, startOf, stillRuns } from '#server/setup/lib/processes.mjs'
 import { takeRunLock } from '#server/setup/lib/run-lock.mjs'
 
@@ -44,21 +44,26 @@ describe('inspectPlace', () => {
 
 describe('ensureKeys', () => {
   it('makes every key once, for this user alone', () => {
-    ensureKeys(folder, false)
+    ensureKeys(folder, null)
     const before = Object.keys(KEY_FILES).map((name) => readKey(folder, name))
     expect(new Set(before).size).toBe(before.length)
     for (const name of Object.keys(KEY_FILES)) {
       expect(statSync(join(folder, 'keys', name)).mode & 0o777, name).toBe(0o600)
     }
     expect(statSync(join(folder, 'keys')).mode & 0o777).toBe(0o700)
-    ensureKeys(folder, true)
+    ensureKeys(folder, join(folder, 'postgres'))
     expect(Object.keys(KEY_FILES).map((name) => readKey(folder, name))).toEqual(before)
   })
   it('makes no new key beside an old database', () => {
-    ensureKeys(folder, false)
+    ensureKeys(folder, null)
     rmSync(join(folder, 'keys', 'encryption-keys'))
-    expect(() => ensureKeys(folder, true)).toThrow(/encryption-keys is missing/)
+    expect(() => ensureKeys(folder, join(folder, 'postgres'))).toThrow(/encryption-keys is missing/)
     expect(existsSync(join(folder, 'keys', 'encryption-keys'))).toBe(false)
+  })
+  it('says to move the database away too where it lies elsewhere', () => {
+    const inside = missingKeysProblem('/home/a/.data', '/home/a/.data/postgres', ['x'])
+    expect(inside.match(/^ {2}mv /gm)).toHaveLength(1)
+    expect(missingKeysProblem('/home/a/.data', '/var/lib/b', ['x'])).toContain('mv /var/lib/b /var/lib/b-without-keys')
   })
 })
 
