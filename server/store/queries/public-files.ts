@@ -1,4 +1,4 @@
-import { and, asc, desc, eq, gt, ne } from 'drizzle-orm'
+import { and, asc, desc, eq, gt, isNotNull, ne } from 'drizzle-orm'
 import { entriesHeader, entriesLine } from '#shared/protocol/entries-csv.ts'
 import { labelsBytes } from '#shared/protocol/labels.ts'
 import { utf8 } from '#shared/bytes/bytes.ts'
@@ -108,7 +108,7 @@ export async function publicSlugs(db: Database): Promise<string[]> {
   const rows = await db
     .select({ slug: draw.slug })
     .from(draw)
-    .where(ne(draw.state, 'draft'))
+    .where(isNotNull(draw.openedAt))
     .orderBy(desc(draw.createdAt))
     .limit(49_000)
   return rows.map(({ slug }) => slug)

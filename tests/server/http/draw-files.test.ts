@@ -102,11 +102,11 @@ describe('the files beside a draw', () => {
   it('give the signed bytes of the seal in force, and every leaf in order', async () => {
     const row = await sealedRow(database.pool)
     const slug = await slugOf(row)
-    const seal = await request(app).get(`/draws/${slug}/seal.json`).buffer(true).parse(binary)
+    const seal = await request(app).get(`/draws/${slug}/seal.json`).responseType('blob')
     expect(createHash('sha256').update(seal.body as Buffer).digest('hex')).toBe(row.digest)
     expect(seal.headers['content-length']).toBe('40')
-    expect(((await request(app).get(`/draws/${slug}/seal.sig`).buffer(true).parse(binary)).body as Buffer).length).toBe(64)
-    const entries = await request(app).get(`/draws/${slug}/entries.csv`).buffer(true).parse(binary)
+    expect(((await request(app).get(`/draws/${slug}/seal.sig`).responseType('blob')).body as Buffer).length).toBe(64)
+    const entries = await request(app).get(`/draws/${slug}/entries.csv`).responseType('blob')
     expect((entries.body as Buffer).toString()).toMatch(/^tickets,entry_commit\n3,[0-9a-f]{64}\n4,[0-9a-f]{64}\n$/)
     expect(entries.headers['content-type']).toBe('text/csv; charset=utf-8; header=present')
     expect((await request(app).get(`/draws/${slug}/terms.txt`)).text).toBe('Terms.\n')
@@ -114,7 +114,7 @@ describe('the files beside a draw', () => {
 
   it('answer HEAD without a body and a known entity tag with 304', async () => {
     const slug = await slugOf(await sealedRow(database.pool))
-    const first = await request(app).get(`/draws/${slug}/seal.json`).buffer(true).parse(binary)
+    const first = await request(app).get(`/draws/${slug}/seal.json`).responseType('blob')
     const head = await request(app).head(`/draws/${slug}/seal.json`)
     expect(head.headers.etag).toBe(first.headers.etag)
     expect(head.headers['content-length']).toBe('40')
@@ -129,7 +129,7 @@ describe('the files beside a draw', () => {
     const slug = await slugOf(row)
     const contents = await lockArchive(row)
     await openLabel(row, 'Ines O.')
-    const first = await request(app).get(`/draws/${slug}/proof.zip`).buffer(true).parse(binary)
+    const first = await request(app).get(`/draws/${slug}/proof.zip`).responseType('blob')
     expect(first.headers['content-type']).toBe('application/zip')
     expect(first.headers['content-length']).toBe(String((first.body as Buffer).length))
     expect(first.headers['content-disposition']).toBe(`attachment; filename="${slug}-proof.zip"`)
@@ -151,8 +151,7 @@ describe('the files beside a draw', () => {
     const second = await request(app)
       .get(`/draws/${slug}/proof.zip`)
       .set('If-None-Match', String(first.headers.etag))
-      .buffer(true)
-      .parse(binary)
+      .responseType('blob')
     expect(second.status).toBe(200)
     const withdrawn = await openZip(memorySource(new Uint8Array(second.body as Buffer)))
     expect(withdrawn.size('labels.jsonl')).toBe(0)
@@ -173,7 +172,7 @@ describe('the files beside a draw', () => {
     const row = await drawnRow(database.pool)
     await lockArchive(row)
     const without = site({ find: () => undefined } as unknown as SigningKeys)
-    const key = await request(without).get(`/draws/${await slugOf(row)}/site-key.pem`).buffer(true).parse(binary)
+    const key = await request(without).get(`/draws/${await slugOf(row)}/site-key.pem`).responseType('blob')
     expect((key.body as Buffer).toString()).toContain(`site-key.pem of ${row.drawId}`)
   })
 
@@ -182,9 +181,3 @@ describe('the files beside a draw', () => {
     expect((await request(app).get('/draws/..%2F..%2Fetc/seal.json')).status).toBe(404)
   })
 })
-
-function binary(response: NodeJS.ReadableStream, done: (error: Error | null, body: Buffer) => void): void {
-  const chunks: Buffer[] = []
-  response.on('data', (chunk: Buffer) => chunks.push(chunk))
-  response.on('end', () => done(null, Buffer.concat(chunks)))
-}
