@@ -1,0 +1,13 @@
+const WORDS: Record<string, string> = {
+  'close-due-draws': 'Close lists whose time has come',
+  settle: 'Settle a draw',
+  archive: 'Keep a proof archive',
+  seal: 'Seal a long list',
+  mail: 'Send a mail',
+}
+
+/** A queue's name in words; an unknown one as it stands, without its hyphens. */
+export function jobWords(kind: string): string {
+  const words = WORDS[kind] ?? kind.replaceAll('-', ' ')
+  return words.charAt(0).toUpperCase() + words.slice(1)
+}

@@ -1,0 +1,109 @@
+import type { DrawPage } from '#shared/schemas/api/public.ts'
+import { CopyButton } from '#src/ui/copy-button.tsx'
+import { Digest, digestGroups } from '#src/ui/digest.tsx'
+import { formatClock, formatMoment, wallClock } from '#src/ui/format-time.ts'
+import { Link } from '#src/ui/link.tsx'
+import { Part } from '#src/ui/page.tsx'
+import { SealEdge } from '#src/ui/seal-edge.tsx'
+
+export function SealPart({ draw }: { readonly draw: DrawPage }) {
+  const { seal } = draw
+  if (!seal) return null
+  const at = wallClock(seal.sealedAt, draw.timeZone)
+  const groups = digestGroups(seal.digest)
+  return (
+    <Part title="The seal" note={<p>Published, signed and logged before any random number exists.</p>}>
+      <div className="seal-grid">
+        <SealEdge
+          large
+          digest={seal.digest}
+          lines={[`${at.day} ${at.monthName.slice(0, 3)} ${at.year}`, formatClock(seal.sealedAt, draw.timeZone, true)]}
+        />
+        <div>
+          <p className="hex">
+            {[0, 4, 8, 12].map((from) => (
+              <span className="block" key={from}>
+                {groups.slice(from, from + 4).join(' ')}
+              </span>
+            ))}
+          </p>
+          <div className="note mt-unit">
+            The edge shows the same 64 digits: one reed each, the longer the higher. It helps the eye; only the digits
+            prove anything. <CopyButton value={seal.digest} what="the seal" text="Copy the digest" />
+          </div>
+          <div className="note mt-unit">
+            <Digest label="Signed with the site’s key" value={seal.keyFingerprint} what="the key’s fingerprint" />
+          </div>
+        </div>
+      </div>
+      <p className="note mt-unit-2">
+        The signed bytes:{' '}
+        <Link plain to={`/draws/${draw.slug}/seal.json`}>
+          seal.json
+        </Link>
+        ,{' '}
+        <Link plain to={`/draws/${draw.slug}/seal.sig`}>
+          seal.sig
+        </Link>
+        ,{' '}
+        <Link plain to={`/draws/${draw.slug}/entries.csv`}>
+          entries.csv
+        </Link>
+        ,{' '}
+        <Link plain to={`/draws/${draw.slug}/terms.txt`}>
+          terms.txt
+        </Link>
+        ,{' '}
+        <Link plain to={`/draws/${draw.slug}/site-key.pem`}>
+          site-key.pem
+        </Link>
+        . The list shows ticket counts and no names.
+      </p>
+    </Part>
+  )
+}
+
+export function EarlierSealsPart({ draw }: { readonly draw: DrawPage }) {
+  if (draw.replacedSeals.length === 0) return null
+  const chain = [...draw.replacedSeals, ...(draw.seal ? [draw.seal] : [])]
+  return (
+    <Part title="Earlier seals" note={<p>Replaced in public, kept for good, their secrets destroyed unopened.</p>}>
+      <ul className="figures">
+        {draw.replacedSeals.map((old, index) => (
+          <li key={old.digest}>
+            <span>Seal {index + 1}</span>
+            <div>
+              <p>
+                Sealed on {formatMoment(old.sealedAt, draw.timeZone)}, to be drawn on{' '}
+                {formatMoment(old.drawAt, draw.timeZone)}.
+              </p>
+              {chain[index + 1]?.reason ? (
+                <p className="mt-0">Why it was replaced: “{chain[index + 1]?.reason}”</p>
+              ) : null}
+              <div className="note">
+                <Digest value={old.digest} what={`seal ${index + 1}`} />
+              </div>
+            </div>
+          </li>
+        ))}
+      </ul>
+    </Part>
+  )
+}
+
+export function AreYouInPart() {
+  return (
+    <Part title="Are you in it?">
+      <div className="measure">
+        <p>
+          Every entrant with an e-mail address was sent a receipt when the list was sealed. It leads from their tickets
+          to this seal, so it proves that they are in the list, and nobody else’s entry is shown by it.
+        </p>
+        <p>
+          Keep it. If you entered and have none, ask the promoter before the draw: a mistake in a sealed list can be put
+          right by a new seal until then, and not after.
+        </p>
+      </div>
+    </Part>
+  )
+}

@@ -1,0 +1,52 @@
+import { formatNumber } from '#src/ui/format-number.ts'
+import { coinShape, sideLabel, trim, type LadderCoin } from './geometry.ts'
+import { barWords } from './words.ts'
+
+/** The tickets still in, split in proportion; the chosen side filled, the other pale. No side is under 3 px. */
+export function Bar({ coin }: { readonly coin: LadderCoin }) {
+  const shape = coinShape(coin)
+  const percent = trim(shape.leftPercent)
+  const h = shape.heads ? 'won' : 'lost'
+  const t = shape.heads ? 'lost' : 'won'
+  return (
+    <div className="bar" role="img" aria-label={barWords(coin)}>
+      <svg className="bar-shape" width="100%" height="100%" aria-hidden="true">
+        {shape.right > 0 ? (
+          <rect className={`t ${t}`} x={`${percent}%`} width={`${trim(100 - shape.leftPercent)}%`} height="100%" />
+        ) : null}
+        {shape.left > 0 ? <rect className={`h ${h}`} width={`${percent}%`} height="100%" /> : null}
+        {/* A sliver keeps 3 px, whatever the width of the screen. */}
+        {shape.left > 0 && shape.leftPercent < 2 ? <rect className={`h ${h} least`} width="3" height="100%" /> : null}
+        {shape.right > 0 && shape.leftPercent > 98 ? (
+          <rect className={`t ${t} least`} x="100%" width="3" height="100%" transform="translate(-3 0)" />
+        ) : null}
+      </svg>
+      <Side side="h" won={shape.heads} tickets={shape.left} percent={shape.leftPercent} />
+      <Side side="t" won={!shape.heads} tickets={shape.right} percent={100 - shape.leftPercent} />
+    </div>
+  )
+}
+
+interface SideProps {
+  readonly side: 'h' | 't'
+  readonly won: boolean
+  readonly tickets: number
+  readonly percent: number
+}
+
+function Side({ side, won, tickets, percent }: SideProps) {
+  if (tickets === 0) return null
+  const figure = formatNumber(tickets)
+  const label = sideLabel(percent, figure.length)
+  if (label.figure === 'nowhere') return null
+  return (
+    <span
+      className={`side ${side} ${won ? 'won' : 'lost'}${label.figure === 'wide' ? ' wide' : ''}${label.glyph ? '' : ' tiny'}`}
+      aria-hidden="true"
+    >
+      {label.glyph ? <i className={side === 'h' ? 'disc' : 'ring'} /> : null}
+      <b>{figure}</b>
+      {label.word ? <em>{side === 'h' ? 'left' : 'right'}</em> : null}
+    </span>
+  )
+}

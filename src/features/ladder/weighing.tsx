@@ -1,0 +1,47 @@
+import { weigh, type LadderCoin } from './geometry.ts'
+
+const SIGN = { equal: '=', heads: '<', tails: '>' } as const
+
+/** The flips held against the binary digits of the chance, column by column, the deciding one ringed. */
+export function Weighing({ coin }: { readonly coin: LadderCoin }) {
+  const [left, right] = coin
+  const { rungs, rest, goesOn } = weigh(coin)
+  return (
+    <div className="weigh" aria-hidden="true">
+      <span className="lab">
+        <span>Flips</span>
+        <span />
+        <span className="chance">
+          <span className="fraction">
+            {left}/{left + right} =
+          </span>{' '}
+          0.
+        </span>
+      </span>
+      {rungs.map((rung, index) => {
+        // Equal with no digit left is tails too; its sign stays the equals sign.
+        const sign = rung.flip === rung.digit ? '=' : SIGN[rung.outcome]
+        return (
+          <span key={index} className={`rung${rung.outcome === 'equal' ? '' : ` decides ${rung.outcome}`}`}>
+            <Flip flip={rung.flip} />
+            <span className="sign" data-sign={sign}>
+              {sign}
+            </span>
+            <span className="digit">{rung.digit}</span>
+          </span>
+        )
+      })}
+      {rest || goesOn ? (
+        <span className="rest">
+          <span>{rest}</span>
+          {goesOn ? '…' : ''}
+        </span>
+      ) : null}
+    </div>
+  )
+}
+
+/** A fair flip: a filled disc for 1, an open one for 0, always with its figure. */
+export function Flip({ flip }: { readonly flip: 0 | 1 }) {
+  return <span className={flip === 1 ? 'flip one' : 'flip nought'}>{flip}</span>
+}

@@ -1,0 +1,72 @@
+import { useSuspenseQuery } from '@tanstack/react-query'
+import { useParams, type LoaderFunctionArgs } from 'react-router'
+import type { OrganisationPage } from '#shared/schemas/api/public.ts'
+import { DrawList } from '#src/features/draws/components/draw-list.tsx'
+import { useApp } from '#src/lib/app-context.ts'
+import { Head } from '#src/lib/head.tsx'
+import { load } from '#src/lib/loading.ts'
+import { countOf } from '#src/ui/format-number.ts'
+import { Notice } from '#src/ui/notice.tsx'
+import { Facts, Part, Title } from '#src/ui/page.tsx'
+import { Empty } from '#src/ui/states.tsx'
+import { organisationQuery } from './api/get-organisations.ts'
+
+export async function loader(args: LoaderFunctionArgs) {
+  await load(args, (api) => organisationQuery(api, args.params.slug ?? ''))
+  return null
+}
+
+export function Component() {
+  const { api } = useApp()
+  const { slug = '' } = useParams()
+  const { data } = useSuspenseQuery(organisationQuery(api, slug))
+  return <Organisation organisation={data} />
+}
+
+/** One organisation and all its draws. */
+export function Organisation({ organisation }: { readonly organisation: OrganisationPage }) {
+  return (
+    <>
+      <Head
+        title={organisation.name}
+        description={`${organisation.about} All draws of ${organisation.name}, and how each was settled.`}
+        path={`/organisations/${organisation.slug}`}
+      />
+      <Title title={organisation.name} lead={organisation.about}>
+        <Facts
+          items={[
+            ['Address', organisation.address],
+            organisation.registration ? ['Registered', `${organisation.registration}, as they state`] : null,
+          ]}
+        />
+        {organisation.demo || organisation.suspended ? (
+          <div className="mt-unit-2">
+            {organisation.demo ? (
+              <Notice title="A demonstration">
+                <p>This organisation, its people and its draws are invented to show how the site works.</p>
+              </Notice>
+            ) : null}
+            {organisation.suspended ? (
+              <Notice title="Suspended">
+                <p>
+                  The site has suspended this organisation. It can open nothing new and change nothing. What it has
+                  sealed is still drawn, and what is published stays.
+                </p>
+              </Notice>
+            ) : null}
+          </div>
+        ) : null}
+      </Title>
+      <Part
+        title="Its draws"
+        note={organisation.draws.length > 0 ? <p>{countOf(organisation.draws.length, 'draw')}</p> : undefined}
+      >
+        {organisation.draws.length === 0 ? (
+          <Empty title="No draw of this organisation is public yet." />
+        ) : (
+          <DrawList draws={organisation.draws} ownPage />
+        )}
+      </Part>
+    </>
+  )
+}
