@@ -991,8 +991,14 @@ function checkLabels(c) {
     opened.add(leaf)
   })
   c.withheld = [...winners].filter((leaf) => !opened.has(leaf))
-  const withheld = c.withheld.length ? ` Label withheld: leaf ${c.withheld.join(', leaf ')}.` : ''
+  const withheld = c.withheld.length ? ` Label withheld: ${leaves(c.withheld)}.` : ''
   return `${c.result.picks.length} picks fit their leaves, and ${opened.size} opened labels fit.${withheld}`
+}
+
+/** Names leaves, the first twenty of them. */
+function leaves(numbers) {
+  const more = numbers.length > 20 ? ` and ${numbers.length - 20} more` : ''
+  return `leaf ${numbers.slice(0, 20).join(', ')}${more}`
 }
 
 /** Step 11: the transcript's digest (section 8). */
@@ -1105,7 +1111,7 @@ function verdict(c) {
       : `Signed by an unknown key. Compare all 64 digits with the fingerprint that the site publishes: ${c.fingerprint}`,
   )
   if (c.withheld.length)
-    lines.push(`Label withheld for ${c.withheld.length} of the winning leaves: ${c.withheld.join(', ')}.`)
+    lines.push(`Label withheld for ${c.withheld.length} of the winning leaves: ${leaves(c.withheld)}.`)
   lines.push(
     'What no check can show: whether every ticket sold was entered and no invented entrant was (receipts, the witness’s sample of',
     '  stubs and the money show that); whether a coin was tossed as written; and that the beacon’s members and the site, all',

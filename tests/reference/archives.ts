@@ -42,6 +42,7 @@ export interface Made {
   zip: Buffer
   fingerprint: string
   sealDigest: string
+  blindingKey: Buffer
   leaves: Leaf[]
   picks: Pick[]
   receipt: (leaf: number) => Buffer
@@ -85,7 +86,8 @@ export function makeArchive(wanted: Wanted): Made {
   })
   const publicKey = createPublicKey(privateKey)
   const fingerprint = hex(sha256(publicKey.export({ format: 'der', type: 'spki' })))
-  const leaves = record.makeLeaves(random.bytes(), randomEntrants(random, wanted.entrants, wanted.mostTickets ?? 40))
+  const blindingKey = random.bytes()
+  const leaves = record.makeLeaves(blindingKey, randomEntrants(random, wanted.entrants, wanted.mostTickets ?? 40))
   const tickets = leaves.map((leaf) => leaf.tickets)
   const terms = utf8(`Terms of the draw ${wanted.seed}.\n\nTickets cost what the poster says.\n`)
 
@@ -217,6 +219,7 @@ export function makeArchive(wanted: Wanted): Made {
     zip: writeZip(files),
     fingerprint,
     sealDigest: hex(sealDigest),
+    blindingKey,
     leaves,
     picks,
     receipt: (leaf) => {

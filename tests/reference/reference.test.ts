@@ -118,7 +118,7 @@ describe('an archive by the second implementation', () => {
     expect(stdout).toMatch(/^step 1 {2}The archive and its members: /)
     expect(stdout).toContain('Not examined: timestamp.tsr.')
     const winners = made.picks.slice(0, 3).map((pick) => pick.leaf)
-    expect(stdout).toContain(`Label withheld for 3 of the winning leaves: ${winners.join(', ')}.`)
+    expect(stdout).toContain(`Label withheld for 3 of the winning leaves: leaf ${winners.join(', ')}.`)
     expect(stdout).toContain('The arithmetic holds')
     expect(stdout).toContain('Sealed in time: not shown.')
     expect(stdout).toContain(
