@@ -111,6 +111,15 @@ describe('a relay of another kind', () => {
 
   it.each([
     ['another round number', 200, JSON.stringify({ round: 124, signature })],
+    // Round 657413 (mcdcam/python-drand-verify, README): a true round, but not the one that was asked for.
+    [
+      'another, real round',
+      200,
+      JSON.stringify({
+        round: 657413,
+        signature: 'b713718a38ae728dfd477991af2822e08d2f305e47718cef9f7848ce4050e7be41076862b98fad56e91a6b85b89cd97b',
+      }),
+    ],
     ['a false randomness', 200, JSON.stringify({ round: 123, signature, randomness: 'deadbeef'.repeat(8) })],
     ['capital letters', 200, JSON.stringify({ round: 123, signature: signature.toUpperCase() })],
     ['a text', 200, 'round 123'],
