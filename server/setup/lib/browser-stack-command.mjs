@@ -48,7 +48,15 @@ export async function browserStack(env) {
     const base = { ...testEnvironment(env), EVENPENNY_FAKE_CONTROL: 'yes' }
     const environment = localEnvironment({ base, data, ports, databaseUrl, dev: false })
     await migrate(ROOT, environment)
-    const stack = makeStack({ root: ROOT, env: environment, ports, logs: join(data, 'logs'), onTrouble: say })
+    // A runner that is killed must take the services with it.
+    const stack = makeStack({
+      root: ROOT,
+      env: environment,
+      ports,
+      logs: join(data, 'logs'),
+      onTrouble: say,
+      ownGroups: false,
+    })
     cleanUps.push(stack.stop)
     const starting = async () => {
       await stack.startFakes()

@@ -66,5 +66,5 @@ export const siteAddress = (ports) => `http://localhost:${ports.site}`
  */
 export function testEnvironment(env) {
   const kept = Object.entries(env).filter(([name]) => !/^(npm_|EVENPENNY_|PG)/i.test(name) && name !== 'NODE_ENV')
-  return { ...Object.fromEntries(kept), FORCE_COLOR: '0' }
+  return { ...Object.fromEntries(kept.filter(([name]) => name !== 'FORCE_COLOR')), NO_COLOR: '1' }
 }

@@ -40,7 +40,7 @@ export async function ensureBuild(root, say) {
   say('Building the site.')
   const started = Date.now()
   const digest = buildDigest(root)
-  const env = { ...process.env, NODE_ENV: 'production' }
+  const env = { ...process.env, NODE_ENV: 'production', NO_COLOR: '1' }
   const done = await run('npm', ['run', '--silent', 'build'], { cwd: root, env, timeoutMs: 10 * 60_000 })
   if (done.code !== 0) throw new SetupProblem(`The build failed. Its last lines:\n${lastLines(done.output, 30)}`)
   stampBuild(root, digest)

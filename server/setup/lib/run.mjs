@@ -10,6 +10,7 @@ import { spawn } from 'node:child_process'
  */
 
 const KEPT = 4 * 1024 * 1024
+const GRACE_MS = 20_000
 
 /** Process groups of the programs that run now. */
 const running = new Set()
@@ -37,7 +38,7 @@ export function endRunning(signal) {
  * @param {number} [options.gid]
  * @param {string} [options.input] given on standard input, which is otherwise empty
  * @param {boolean} [options.terminal] standard input is the terminal's own, so that sudo can ask for a password
- * @param {number} [options.timeoutMs] after it the program and all that it started are killed
+ * @param {number} [options.timeoutMs] after it the program and all that it started are asked to end, and killed soon after
  * @param {boolean} [options.whileStopping] it is part of stopping, so it runs even after endRunning
  * @param {(text: string) => void} [options.onOutput]
  * @returns {Promise<RunResult>}
@@ -65,6 +66,8 @@ export function run(program, args, options = {}) {
     const group = child.pid === undefined ? 0 : detached ? -child.pid : child.pid
     let output = ''
     let timedOut = false
+    /** @type {NodeJS.Timeout | undefined} */
+    let killTimer
     const take = (/** @type {string} */ text) => {
       output = (output + text).slice(-KEPT)
       options.onOutput?.(text)
@@ -78,7 +81,9 @@ export function run(program, args, options = {}) {
         ? undefined
         : setTimeout(() => {
             timedOut = true
-            if (group !== 0) endGroup(group, 'SIGKILL')
+            if (group === 0) return
+            endGroup(group, 'SIGTERM')
+            killTimer = setTimeout(() => endGroup(group, 'SIGKILL'), GRACE_MS)
           }, options.timeoutMs)
     let settled = false
     const settle = (/** @type {number | null} */ code, /** @type {NodeJS.Signals | null} */ signal) => {
@@ -86,6 +91,7 @@ export function run(program, args, options = {}) {
       settled = true
       running.delete(group)
       clearTimeout(timer)
+      clearTimeout(killTimer)
       resolve({ code, signal, output, timedOut })
     }
     child.on('error', (error) => {

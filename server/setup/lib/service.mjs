@@ -31,13 +31,14 @@ const KEPT_LINES = 30
  * @param {NodeJS.ProcessEnv} options.env
  * @param {string} options.logFile
  * @param {(line: string) => void} options.onTrouble
+ * @param {boolean} [options.ownGroup] out of reach of the terminal's Ctrl-C, which would end all services at once and out of
+ *   order; what kills the group of the caller then does not reach it either
  * @returns {Service}
  */
-export function startService({ name, args, cwd, env, logFile, onTrouble }) {
+export function startService({ name, args, cwd, env, logFile, onTrouble, ownGroup = true }) {
   if (existsSync(logFile) && statSync(logFile).size > LOG_LIMIT) renameSync(logFile, `${logFile}.old`)
   const log = createWriteStream(logFile, { flags: 'a', mode: 0o600 })
-  // A group of its own: Ctrl-C in the terminal must not end all services at once and out of order.
-  const child = spawn(process.execPath, [...args], { cwd, env, detached: true, stdio: ['ignore', 'pipe', 'pipe'] })
+  const child = spawn(process.execPath, [...args], { cwd, env, detached: ownGroup, stdio: ['ignore', 'pipe', 'pipe'] })
   let running = child.pid !== undefined
   /** @type {string[]} */
   const kept = []
@@ -83,7 +84,7 @@ export function startService({ name, args, cwd, env, logFile, onTrouble }) {
     async stop(graceMs) {
       if (!running || child.pid === undefined) return
       endGroup(child.pid, 'SIGTERM')
-      const group = -child.pid
+      const group = ownGroup ? -child.pid : child.pid
       const timer = setTimeout(() => endGroup(group, 'SIGKILL'), graceMs)
       await ended
       clearTimeout(timer)

@@ -29,9 +29,10 @@ const GRACE_MS = 15_000
  * @param {string} options.logs folder for log files
  * @param {(line: string) => void} options.onTrouble
  * @param {(pids: readonly number[]) => void} [options.onPids] called when a service starts
+ * @param {boolean} [options.ownGroups] see startService
  * @returns {Stack}
  */
-export function makeStack({ root, env, ports, logs, onTrouble, onPids }) {
+export function makeStack({ root, env, ports, logs, onTrouble, onPids, ownGroups = true }) {
   /** @type {Service[]} */
   const services = []
   let stopping = false
@@ -58,6 +59,7 @@ export function makeStack({ root, env, ports, logs, onTrouble, onPids }) {
       cwd: root,
       env,
       logFile: join(logs, `${name}.log`),
+      ownGroup: ownGroups,
       onTrouble: (line) => onTrouble(`${name.padEnd(6)} ${line}`),
     })
     services.push(service)

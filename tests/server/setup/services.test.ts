@@ -63,7 +63,7 @@ describe('environments', () => {
   it('keeps a real service’s address out of the tests', () => {
     expect(testEnvironment({ HOME: '/h', EVENPENNY_DATABASE_URL: 'postgres://real', PGPASSWORD: 'x' })).toEqual({
       HOME: '/h',
-      FORCE_COLOR: '0',
+      NO_COLOR: '1',
     })
   })
 })
