@@ -24,17 +24,15 @@ export function createHmac(sha256: Sha256): Hmac {
     assertBytes(message, 'message')
     if (BLOCK + message.length > inner.length) inner = new Uint8Array(BLOCK + 2 * message.length)
     const block = key.length > BLOCK ? sha256(key) : key
-    for (let i = 0; i < BLOCK; i += 1) {
-      const byte = i < block.length ? (block[i] as number) : 0
-      inner[i] = byte ^ 0x36
-      outer[i] = byte ^ 0x5c
+    inner.fill(0x36, 0, BLOCK)
+    outer.fill(0x5c, 0, BLOCK)
+    for (let i = 0; i < block.length; i += 1) {
+      inner[i] = (block[i] as number) ^ 0x36
+      outer[i] = (block[i] as number) ^ 0x5c
     }
     inner.set(message, BLOCK)
     outer.set(sha256(inner.subarray(0, BLOCK + message.length)), BLOCK)
-    const tag = sha256(outer)
-    inner.fill(0, 0, BLOCK + message.length)
-    outer.fill(0)
-    return tag
+    return sha256(outer)
   }
 }
 

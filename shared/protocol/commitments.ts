@@ -85,8 +85,9 @@ export function deriveSalts(sha256: Sha256, blindingKey: Uint8Array, reference: 
 export function createSaltDeriver(sha256: Sha256, blindingKey: Uint8Array): (reference: string) => Salts {
   if (blindingKey.length !== 32) throw new RangeError('a blinding key has 32 bytes')
   const hmac = createHmac(sha256)
+  const buffer = new Uint8Array(3 * MAX_REFERENCE_LENGTH)
   return (reference) => {
-    const entrantSecret = hmac(blindingKey, utf8(reference))
+    const entrantSecret = hmac(blindingKey, buffer.subarray(0, writeUtf8(buffer, 0, reference)))
     return { labelSalt: hmac(entrantSecret, LABEL_INFO), identitySalt: hmac(entrantSecret, IDENTITY_INFO) }
   }
 }

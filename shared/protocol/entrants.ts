@@ -3,7 +3,7 @@ import { fail, ok, type Failure, type Result } from '../bytes/result.ts'
 import { textProblem, TEXT_PROBLEMS } from '../bytes/text.ts'
 import { buildSumTree, type SumTree } from '../merkle/sum-tree.ts'
 import { compareReferences, createCommitter, createSaltDeriver, isReference, type Identity } from './commitments.ts'
-import { firstDuplicateCommit } from './duplicates.ts'
+import { duplicateCommit } from './duplicate-commit.ts'
 import { MAX_ENTRANTS, MAX_TICKETS, MAX_TICKETS_EACH } from './limits.ts'
 
 /** An entrant as it goes into a seal. Text is NFC already; `identity.reference` is the reference of this seal. */
@@ -46,8 +46,8 @@ export function prepareEntries(
   if (count === 0) return fail('too-few', '', 'A draw needs at least one entrant.')
   if (count > MAX_ENTRANTS) return fail('too-many', '', `A draw has at most ${MAX_ENTRANTS} entrants.`)
   const order = Uint32Array.from({ length: count }, (_, i) => i)
-  const reference = (i: number): string => (entrants[i] as SealEntrant).identity.reference
-  order.sort((left, right) => compareReferences(reference(left), reference(right)))
+  const references = entrants.map((entrant) => entrant.identity.reference)
+  order.sort((left, right) => compareReferences(references[left] as string, references[right] as string))
   const salts = createSaltDeriver(sha256, blindingKey)
   const committer = createCommitter(sha256)
   const tickets = new Float64Array(count)
@@ -58,7 +58,7 @@ export function prepareEntries(
     const entrant = entrants[index] as SealEntrant
     const refused = entrantProblem(entrant, index)
     if (refused !== null) return refused
-    if (leaf > 0 && reference(order[leaf - 1] as number) === entrant.identity.reference) {
+    if (leaf > 0 && references[order[leaf - 1] as number] === entrant.identity.reference) {
       return fail('reference-twice', `[${index}].reference`, 'This reference stands in the list twice.')
     }
     total += entrant.tickets
@@ -67,9 +67,10 @@ export function prepareEntries(
     const commits = committer.entrant(salts(entrant.identity.reference), entrant.label, entrant.identity)
     entryCommits.set(commits.entryCommit, leaf * 32)
   }
-  const twice = firstDuplicateCommit(entryCommits)
+  const tree = buildSumTree(sha256, tickets, entryCommits)
+  const twice = duplicateCommit(entryCommits, tree.root)
   if (twice !== null) return fail('commitment-twice', `leaf ${twice}`, 'Two entrants have the same commitment.')
-  return ok({ tickets, entryCommits, order, tree: buildSumTree(sha256, tickets, entryCommits) })
+  return ok({ tickets, entryCommits, order, tree })
 }
 
 function entrantProblem(

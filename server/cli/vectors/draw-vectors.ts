@@ -1,10 +1,11 @@
+import { concatBytes } from '#shared/bytes/bytes.ts'
 import { canonicalBytes } from '#shared/bytes/canonical-json.ts'
 import { hexBytes, toHex } from '#shared/bytes/hex.ts'
 import { bitText } from '#shared/sampling/extractors.ts'
 import { commitEntrant, compareReferences, deriveSalts, parseIdentity } from '#shared/protocol/commitments.ts'
 import { deriveDrawKey } from '#shared/protocol/draw-key.ts'
 import { runDraw, type DrawFlips, type DrawOutcome } from '#shared/protocol/draw.ts'
-import { firstDuplicateCommit } from '#shared/protocol/duplicates.ts'
+import { duplicateCommit } from '#shared/protocol/duplicate-commit.ts'
 import { parseSeal, sealBytes, seedCommitment, validateSeal } from '#shared/protocol/seal.ts'
 import type { Seal } from '#shared/protocol/seal-types.ts'
 import { checkTosses, tossBits as tossBitsOf } from '#shared/protocol/tosses.ts'
@@ -64,6 +65,8 @@ export function checkDraw(value: unknown): number {
   const m = expectMembers(NAME, value, DRAW_FIELDS)
   const entries = checkEntrants(m)
   const tree = checkTree(NAME, entries, { root: m.root, total: m.totalTickets, totalField: 'totalTickets' })
+  const twice = duplicateCommit(concatBytes(...entries.map((entry) => entry.entryCommit)), tree.root)
+  if (twice !== null) throw new WrongValue(`${NAME}, entrants[${twice}]`, 'entryCommit', 'stands there twice')
   checkPaths(m, tree, entries)
   const seal = checkSeal(m, entries.length)
   const rounds = m.tosses === null ? null : listOf(NAME, 'tosses', m.tosses).map((r) => textOf(NAME, 'tosses', r))
@@ -80,7 +83,6 @@ export function checkDraw(value: unknown): number {
 function checkEntrants(m: Fields): readonly TreeEntry[] {
   const blindingKey = bytesOf('blindingKey', m.blindingKey, 32)
   let last: string | null = null
-  const commits: Uint8Array[] = []
   const entries = listOf(NAME, 'entrants', m.entrants).map((value, i) => {
     const name = `${NAME}, entrants[${i}]`
     const e = expectMembers(name, value, ENTRANT_FIELDS)
@@ -100,11 +102,8 @@ function checkEntrants(m: Fields): readonly TreeEntry[] {
     expectSame(name, 'labelCommit', e.labelCommit, toHex(committed.labelCommit))
     expectSame(name, 'identityCommit', e.identityCommit, toHex(committed.identityCommit))
     expectSame(name, 'entryCommit', e.entryCommit, toHex(committed.entryCommit))
-    commits.push(committed.entryCommit)
     return { tickets: numberOf(name, 'tickets', e.tickets), entryCommit: committed.entryCommit }
   })
-  const twice = firstDuplicateCommit(Buffer.concat(commits))
-  if (twice !== null) throw new WrongValue(`${NAME}, entrants[${twice}]`, 'entryCommit', 'stands there twice')
   return entries
 }
 

@@ -1,6 +1,6 @@
 import { toHex } from '#shared/bytes/hex.ts'
 import { streamSumTree } from '#shared/merkle/sum-tree.ts'
-import { duplicateCommit } from '#shared/protocol/check/duplicate-commit.ts'
+import { duplicateCommit } from '#shared/protocol/duplicate-commit.ts'
 import { need, StepFailure } from '#shared/protocol/check/failure.ts'
 import { type CheckStep, streamMember } from '#shared/protocol/check/state.ts'
 import { EntriesParser } from '#shared/protocol/entries-csv.ts'
