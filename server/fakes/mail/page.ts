@@ -20,7 +20,7 @@ code,pre{font:400 16px/24px 'IBM Plex Mono',ui-monospace,monospace}
 form{display:flex;flex-wrap:wrap;gap:14px;align-items:end;margin-bottom:28px}
 label{display:block;font-size:16px;line-height:24px}
 input{min-height:48px;width:min(22em,100%);padding:9px 14px;border:2px solid var(--line);border-radius:3px;background:var(--paper);color:inherit;font:inherit}
-button{min-height:48px;padding:9px 20px;border:2px solid var(--ink);border-radius:3px;background:var(--ink);color:var(--paper);font:600 18px/24px inherit;cursor:pointer}
+button{min-height:48px;padding:9px 20px;border:2px solid var(--ink);border-radius:3px;background:var(--ink);color:var(--paper);font:inherit;font-weight:600;cursor:pointer}
 ol{list-style:none;margin:0;padding:0}
 li{padding:14px 0;border-top:1px solid var(--rule)}
 li>*{display:block}
