@@ -22,7 +22,8 @@ const [first, second, third] = [0, 1, 2].map((index) => () => relays[index] as B
   () => BeaconFake,
   () => BeaconFake,
 ]
-const reader = (timeoutMs = 1000) =>
+// Times are wide apart, so that a busy machine does not change who answers first.
+const reader = (timeoutMs = 10_000) =>
   createBeaconReader({ relays: relays.map((relay) => relay.url), timeoutMs, staggerMs: 20, clock })
 const read = (round: number, timeoutMs?: number) => reader(timeoutMs).read(DEVELOPMENT_CHAIN, round)
 
@@ -38,6 +39,7 @@ describe('reading a round', () => {
   it('passes over relays that lie, garble or are down, and tells of the false answers', async () => {
     first().behave({ mode: 'lie' })
     second().behave({ mode: 'garble' })
+    third().behave({ mode: 'slow', milliseconds: 2000 })
     const answer = await read(500)
     expect(answer).toMatchObject({ kind: 'round', round: { relay: third().url } })
     expect(answer.wrong).toEqual([
@@ -49,10 +51,10 @@ describe('reading a round', () => {
   })
 
   it('does not wait for a slow relay when another is quick', async () => {
-    first().behave({ mode: 'slow', milliseconds: 3000 })
+    first().behave({ mode: 'slow', milliseconds: 9000 })
     const start = performance.now()
-    expect(await read(500, 5000)).toMatchObject({ kind: 'round', round: { relay: second().url } })
-    expect(performance.now() - start).toBeLessThan(2000)
+    expect(await read(500)).toMatchObject({ kind: 'round', round: { relay: second().url } })
+    expect(performance.now() - start).toBeLessThan(7000)
   })
 
   it('says "not yet" before the round, and while any relay says so', async () => {
@@ -68,15 +70,15 @@ describe('reading a round', () => {
 
   it('says "unreachable" with a reason for each relay, and makes nothing up', async () => {
     first().behave({ mode: 'down' })
-    second().behave({ mode: 'slow', milliseconds: 2000 })
+    second().behave({ mode: 'slow', milliseconds: 6000 })
     third().behave({ mode: 'lie' })
-    const answer = await read(500, 300)
+    const answer = await read(500, 2500)
     expect(answer).toMatchObject({ kind: 'unreachable' })
     expect(answer).not.toHaveProperty('round')
     if (answer.kind === 'round') throw new Error('a round')
     const why = new Map(answer.reasons.map((reason) => [reason.relay, [reason.why, reason.detail]]))
     expect(why.get(first().url)).toEqual(['unreachable', expect.stringContaining('cannot be reached')])
-    expect(why.get(second().url)).toEqual(['unreachable', 'It did not answer within 0.3 s.'])
+    expect(why.get(second().url)).toEqual(['unreachable', 'It did not answer within 2.5 s.'])
     expect(why.get(third().url)?.[0]).toBe('wrong')
     expect(await createBeaconReader({ relays: [] }).read(DEVELOPMENT_CHAIN, 500)).toEqual({
       kind: 'unreachable',
@@ -95,7 +97,7 @@ describe('a relay of another kind', () => {
   const serve = async (status: number, body: string) => {
     const server = createServer((_req, res) => res.writeHead(status, { 'content-type': 'application/json' }).end(body))
     const listening = await listenOnLoopback(server, 0)
-    const answer = await createBeaconReader({ relays: [listening.url], timeoutMs: 1000 }).read(QUICKNET, 123)
+    const answer = await createBeaconReader({ relays: [listening.url], timeoutMs: 10_000 }).read(QUICKNET, 123)
     await listening.close()
     return answer
   }
