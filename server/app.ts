@@ -25,7 +25,7 @@ import { createProblemOf } from '#server/http/problem-of.ts'
 import { createSessions, sessionControl, signedInPersonId } from '#server/http/session/sessions.ts'
 import { createSignInGuard, type SignInLimits } from '#server/http/session/sign-in-limits.ts'
 import type { Services } from '#server/services.ts'
-import { personWithRoles, rightsOnDraw, rightsOnOrganisation } from '#server/store/queries/rights.ts'
+import { findResource, findSignedIn } from '#server/store/queries/people.ts'
 import { instantOf, wholeSecond } from '#server/time/instants.ts'
 import { allEndpoints } from '#shared/schemas/api/all.ts'
 
@@ -82,7 +82,7 @@ export function createSite(parts: SiteParts): SiteApp {
       passwords: parts.passwords,
       guard: createSignInGuard(services.pool, parts.limits),
     }),
-    (on, key) => (on === 'draw' ? rightsOnDraw(services.db, key) : rightsOnOrganisation(services.db, key)),
+    (on, key) => findResource(services.db, on, key),
   )
 
   const contexts = new WeakMap<Request, RequestContext>()
@@ -106,9 +106,9 @@ export function createSite(parts: SiteParts): SiteApp {
   app.use(async (request, _response, next) => {
     const now = new Date()
     const personId = signedInPersonId(request, now)
-    const actor = personId === null ? null : await personWithRoles(services.db, personId)
+    const person = personId === null ? null : await findSignedIn(services.db, personId)
     contexts.set(request, {
-      actor: actor ?? NOBODY,
+      actor: person ? { person, memberships: person.memberships } : NOBODY,
       session: sessionControl(request, now),
       address: request.ip ?? '',
       requestId: String(request.id),

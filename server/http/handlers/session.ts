@@ -1,0 +1,6 @@
+import { type CallContext, personOf } from '#server/http/endpoints/context.ts'
+import { type Handled, handle } from '#server/http/endpoints/registry.ts'
+import type { HandlerParts } from '#server/http/handlers/parts.ts'
+import { problem } from '#server/http/problems.ts'
+import { findAccount, findSignedIn, getInvitation, getPasswordReset, passwordHashOf } from '#server/store/queries/people.ts'
+import * as api from '#shared/schemas/api/session.ts'
