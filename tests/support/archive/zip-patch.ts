@@ -131,7 +131,7 @@ function central(header: RawHeader, entry: RawZipEntry, offset: number): Uint8Ar
   tail.writeUInt32LE(entry.attributes ?? 0, 8)
   tail.writeUInt32LE(offset, 12)
   return Buffer.concat([
-    Buffer.from([0x50, 0x4b, 1, 2, 20, 0]),
+    Buffer.from([0x50, 0x4b, 1, 2, 20, 3]),
     common(header),
     tail,
     Buffer.from(header.name, 'latin1'),
