@@ -28,6 +28,8 @@ export interface JobData {
     readonly version: number
     readonly entrants: number
     readonly tickets: number
+    /** Where it replaces the seal in force: the new draw time, and the public reason. */
+    readonly postpone?: { readonly drawAt: string; readonly reason: string }
   }
   readonly settle: { readonly draw: string }
   readonly archive: { readonly draw: string }
