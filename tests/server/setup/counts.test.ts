@@ -49,10 +49,7 @@ describe('countVitest', () => {
     expect(figures(countVitest(vitest({ status: 'failed', tests: [] }), 1))).toEqual([0, 1, 0])
     expect(figures(countVitest(vitest({ status: 'failed', tests: ['passed'] }), 1))).toEqual([1, 1, 0])
     const both = vitest({ status: 'failed', tests: [] }, { status: 'failed', tests: ['passed'] })
-    expect(countVitest(both, 1)).toMatchObject({
-      failed: 2,
-      failures: [/^file-0 /, /^file-1 /].map(expect.stringMatching),
-    })
+    expect(countVitest(both, 1).failures.map((name) => name.slice(0, 7))).toEqual(['file-0 ', 'file-1 '])
   })
   it('counts a crash: no report, half a report, or a bad exit code behind passing tests', () => {
     expect(figures(countVitest(null, 134))).toEqual([0, 1, 0])
