@@ -18,7 +18,7 @@ export const uuid = z.uuid()
 export const page = z.coerce.number().int().min(1).max(1_000_000).default(1)
 export const email = z.email('Type an e-mail address, for example ana@group.example.').max(254)
 /** Ticket count of one entrant: PROTOCOL limit 1 … 2^32 − 1. */
-export const tickets = z.int('Type a whole number of tickets.').min(1, 'Type at least 1 ticket.').max(4_294_967_295)
+export const tickets = z.int('Type a whole number of tickets.').min(1, 'Type at least 1 ticket.').max(4_294_967_295, 'An entrant holds at most 4,294,967,295 tickets.')
 export const totalTickets = z.int().min(0).max(Number.MAX_SAFE_INTEGER)
 /** One line of plain text: trimmed, NFC, no control or bidirectional characters. */
 export const line = (max: number, what = 'Type something here.') =>
@@ -31,7 +31,11 @@ export const line = (max: number, what = 'Type something here.') =>
     )
     .refine((text) => !/[\ud800-\udfff]/u.test(text), 'A character in this text is damaged. Type it again.')
     .pipe(z.string().min(1, what).max(max, `Use at most ${max} characters.`))
-export const optionalLine = (max: number) => z.union([z.literal('').transform(() => null), z.null(), line(max)])
+/** As {@link line}, or nothing. A fault is told in the words of the line. */
+export const optionalLine = (max: number) =>
+  z.union([z.literal('').transform(() => null), z.null(), line(max)], {
+    error: (issue) => (issue.code === 'invalid_union' ? issue.errors.at(-1)?.at(0)?.message : undefined),
+  })
 /** Several lines of plain text. */
 export const text = (max: number, what = 'Type something here.') =>
   z

@@ -150,7 +150,7 @@ export async function getOfficeDraw(
     state: row.state,
     demo: row.demo,
     now: instantOf(now),
-    organisation: { slug: owner.slug, name: owner.name, state: owner.state },
+    organisation: { slug: owner.slug, name: owner.name, state: owner.state, currency: owner.currency },
     prizes,
     counts: { entrants: row.entrantCount, tickets: row.ticketCount, withEmail },
     openedAt: instantOrNull(row.openedAt),

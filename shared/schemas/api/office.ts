@@ -100,7 +100,7 @@ export const officeDraw = z.object({
   state: drawState,
   demo: z.boolean(),
   now: instant,
-  organisation: z.object({ slug, name: z.string(), state: z.string() }),
+  organisation: z.object({ slug, name: z.string(), state: z.string(), currency: z.string() }),
   prizes: z.array(prizeInput.extend({ id: z.string() })),
   counts: z.object({ entrants: z.int(), tickets: totalTickets, withEmail: z.int() }),
   openedAt: instant.nullable(),
