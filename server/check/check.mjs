@@ -186,8 +186,10 @@ function list(value, where) {
   return value
 }
 
-function text(value, where) {
+/** Text by the rule of noForbidden, and not empty: the format names the two members that may be (section 1). */
+function text(value, where, mayBeEmpty = false) {
   if (typeof value !== 'string') fail(where, 'text is expected.')
+  if (value === '' && !mayBeEmpty) fail(where, 'it is empty.')
   noForbidden(value, where)
   return value
 }
@@ -658,7 +660,8 @@ function checkSeal(c) {
   members(seal.entries, ['count', 'root', 'tickets'], at('entries'))
   count(seal.entries.count, 1, MAX_ENTRANTS, at('entries.count'))
   hex(seal.entries.root, 32, at('entries.root'))
-  count(seal.entries.tickets, 1, MAX_COUNT, at('entries.tickets'))
+  const entrants = seal.entries.count
+  count(seal.entries.tickets, entrants, entrants * MAX_TICKETS_EACH, at('entries.tickets')) // never beyond 2^53 − 1
 
   if (list(seal.prizes, at('prizes')).length === 0) fail(at('prizes'), 'there is no prize.')
   const ids = new Set()
@@ -767,8 +770,7 @@ function checkEntries(c) {
     seen.add(digits)
     commits.write(digits, 32 * leaf, 'hex')
     tickets[leaf] = value
-    sum += value
-    if (sum > MAX_COUNT) fail(where, 'the tickets add up to more than 2^53 − 1.')
+    sum += value // 2,000,000 times 2^32 − 1 stays below 2^53 − 1, the limit
     at += 66
   }
   if (leaf !== n) fail('entries.csv', `it holds ${leaf} leaves, and the seal states ${n}.`)
@@ -813,7 +815,7 @@ function checkResult(c) {
     hex(reveal.beacon.signature, 48, at('reveal.beacon.signature'))
   }
   if (reveal.tosses !== null)
-    list(reveal.tosses, at('reveal.tosses')).forEach((round, index) => text(round, at(`reveal.tosses[${index}]`)))
+    list(reveal.tosses, at('reveal.tosses')).forEach((round, index) => text(round, at(`reveal.tosses[${index}]`), true))
 
   list(result.picks, at('picks')).forEach((pick, k) => {
     const where = at(`picks[${k}]`)
@@ -1040,8 +1042,9 @@ function checkReceipt(c, bytes, where) {
     hex(receipt.labelSalt, 32, at('labelSalt'))
     hex(receipt.identitySalt, 32, at('identitySalt'))
     const identity = members(receipt.identity, ['contact', 'name', 'numbers', 'reference'], at('identity'))
-    for (const name of Object.keys(identity)) text(identity[name], at(`identity.${name}`))
-    if (identity.name === '') fail(at('identity.name'), 'it is empty.')
+    for (const name of Object.keys(identity)) {
+      text(identity[name], at(`identity.${name}`), name === 'contact' || name === 'numbers')
+    }
     if (!REFERENCE.test(identity.reference))
       fail(at('identity.reference'), 'it is not 8 to 64 characters of the alphabet for references.')
     entryCommit = commitEntry(
@@ -1167,6 +1170,9 @@ function options(args) {
   return c
 }
 
+/** Names out of a hostile archive or folder must not steer the terminal. */
+const printable = (line) => line.replace(/[^\P{Cc}\n]|\p{Bidi_Control}/gu, '\ufffd')
+
 function main(args) {
   let c
   try {
@@ -1176,10 +1182,11 @@ function main(args) {
     console.error(`${error.message}\n\n${USAGE}`)
     return 2
   }
-  const outcome = run(c, c.json ? () => {} : console.log)
+  const print = (line) => console.log(printable(line))
+  const outcome = run(c, c.json ? () => {} : print)
   if (c.json) console.log(JSON.stringify(outcome))
-  else if (outcome.ok) console.log(`\n${outcome.message}`)
-  else console.log(`FAILED at step ${outcome.step}: ${outcome.where}: ${outcome.message}`)
+  else if (outcome.ok) print(`\n${outcome.message}`)
+  else print(`FAILED at step ${outcome.step}: ${outcome.where}: ${outcome.message}`)
   return outcome.ok ? 0 : 1
 }
 

@@ -122,7 +122,7 @@ export function makeArchive(wanted: Wanted): Made {
       root: hex(record.root(leaves)),
       tickets: tickets.reduce((sum, one) => sum + one, 0),
     },
-    ...rules,
+    ...structuredClone(rules),
     sources: {
       beacon: withBeacon ? { ...developmentChain, round } : null,
       flips: derived ? 'derived' : 'tossed',

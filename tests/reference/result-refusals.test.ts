@@ -1,7 +1,7 @@
 // Steps 4 to 11 of the check: one breach in a result or a member at a time, signed and summed all the same.
 import { describe, expect, it } from 'vitest'
-import { type Changeable, makeArchive } from './archives.ts'
-import { type Json, unhex, utf8 } from './record.ts'
+import { type Changeable, type Made, makeArchive, type Wanted } from './archives.ts'
+import { type Json, peres, unhex, utf8 } from './record.ts'
 import { base, beaconOnly, inside, named, pem, refusals, type Row, tossed, tossesOnly } from './refusals.ts'
 
 const { step } = refusals()
@@ -81,6 +81,21 @@ describe('steps 5 to 9 refuse a result with', () => {
   ]
   it.each(named(rows))('$what', async ({ wish, change, where }) => {
     expect(await step(makeArchive({ ...wish, change: { result: change } }).zip)).toBe(where)
+  })
+
+  it('a round more than was needed, where the rounds before it suffice to the last bit', async () => {
+    const wish = (index: number): Wanted => ({ ...tossed, seed: `to the last bit ${index}`, roundLength: 8 })
+    const spare = (made: Made): number => {
+      const { reveal } = JSON.parse(String(made.files.get('result.json'))) as { reveal: { tosses: string[] } }
+      return (
+        reveal.tosses.map(peres).join('').length -
+        made.picks.flatMap(({ coins }) => coins.map((c) => c[2])).join('').length
+      )
+    }
+    let index = 0
+    while (spare(makeArchive(wish(index))) !== 0) index += 1
+    expect(await step(makeArchive(wish(index)).zip)).toBe('holds')
+    expect(await step(makeArchive({ ...wish(index), roundsTooMany: 1 }).zip)).toBe('8 result.json reveal.tosses')
   })
 
   it.each([tossesOnly, tossed])('a round more than was needed: $seed', async (wish) => {
