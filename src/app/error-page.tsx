@@ -8,34 +8,25 @@ import { PublicSheet } from './public-page.tsx'
 interface Failure {
   readonly title: string
   readonly detail: string
-  readonly status: number | null
+  readonly status: number
 }
 
-/** What the reader is told: what happened, and what to do. */
+const UNKNOWN = {
+  title: 'Something went wrong',
+  detail: 'The site could not make this page. Try again in a moment.',
+}
+const NOWHERE =
+  'The address may be mistyped, or the draw may not be public yet. Search for it by its title or its organisation.'
+
+/** What the reader is told: what happened, and what to do. The same for an error before and after its way to the browser. */
 export function failureWords(error: unknown): Failure {
-  if (!isRouteErrorResponse(error)) {
-    return {
-      title: 'Something went wrong',
-      detail: 'The site could not make this page. Try again in a moment.',
-      status: null,
-    }
-  }
+  if (!isRouteErrorResponse(error)) return { ...UNKNOWN, status: 500 }
   const problem = problemSchema.safeParse(error.data)
   if (error.status === 404) {
-    return {
-      title: 'There is no such page',
-      detail: problem.success
-        ? problem.data.detail
-        : 'The address may be mistyped, or the draw may not be public yet. Search for it by its title or its organisation.',
-      status: 404,
-    }
+    return { title: 'There is no such page', detail: problem.success ? problem.data.detail : NOWHERE, status: 404 }
   }
   if (problem.success) return { title: problem.data.title, detail: problem.data.detail, status: error.status }
-  return {
-    title: 'Something went wrong',
-    detail: 'The site could not make this page. Try again in a moment.',
-    status: error.status,
-  }
+  return { ...UNKNOWN, status: error.status }
 }
 
 /** The page for any failure, in the same sheet as the others. */
@@ -47,7 +38,7 @@ export function ErrorPage() {
       <Title
         title={failure.title}
         lead={failure.detail}
-        stub={failure.status ? <p className="stub-facts mt-0">Status {failure.status}</p> : null}
+        stub={<p className="stub-facts mt-0">Status {failure.status}</p>}
       >
         <p className="buttons mt-unit-2">
           <ButtonLink to="/draws">Search the draws</ButtonLink>

@@ -1,8 +1,8 @@
 import type { QueryExecuteOptions, QueryKey } from '@tanstack/react-query'
 import { data, type RouterContextProvider } from 'react-router'
 import type { ApiClient } from '#shared/schemas/endpoint.ts'
-import { Problem } from '#shared/schemas/problem.ts'
 import { loadContext } from './app-context.ts'
+import { problemOf } from './problem-of.ts'
 
 type Options<Data, Key extends QueryKey> = QueryExecuteOptions<Data, Error, Data, Data, Key>
 
@@ -18,7 +18,8 @@ export async function load<Data, Key extends QueryKey>(
   try {
     return await queryClient.query<Data, Error, Data, Data, Key>({ ...options(api), staleTime: 5_000 })
   } catch (error) {
-    if (error instanceof Problem) throw data(error.details, { status: error.details.status || 503 })
+    const problem = problemOf(error)
+    if (problem) throw data(problem, { status: problem.status || 503 })
     throw error
   }
 }

@@ -1,5 +1,5 @@
 import { QueryClient } from '@tanstack/react-query'
-import { Problem } from '#shared/schemas/problem.ts'
+import { problemOf } from './problem-of.ts'
 
 /** One a request on the server, one a visit in the browser. What the reader did wrong is not tried again. */
 export function createQueryClient(): QueryClient {
@@ -8,7 +8,7 @@ export function createQueryClient(): QueryClient {
       queries: {
         staleTime: 5_000,
         retry: (failures, error) => {
-          const status = error instanceof Problem ? error.details.status : 500
+          const status = problemOf(error)?.status ?? 500
           return typeof window !== 'undefined' && failures < 2 && (status === 0 || status >= 500)
         },
       },

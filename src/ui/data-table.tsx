@@ -1,4 +1,4 @@
-import type { ReactNode } from 'react'
+import { Fragment, type ReactNode } from 'react'
 
 export interface Column<Row> {
   readonly key: string
@@ -19,6 +19,9 @@ interface DataTableProps<Row> {
   readonly rows: readonly Row[]
   readonly rowKey: (row: Row) => string
   readonly dense?: boolean
+  readonly className?: string
+  /** What opens under a row, over its whole width; null where nothing does. */
+  readonly detail?: (row: Row) => ReactNode
   readonly foot?: ReactNode
 }
 
@@ -26,9 +29,18 @@ interface DataTableProps<Row> {
  * A table that becomes rows of two lines on phones. Roles are written out because a table laid out as blocks loses
  * them in some browsers.
  */
-export function DataTable<Row>({ caption, columns, rows, rowKey, dense = false, foot }: DataTableProps<Row>) {
+export function DataTable<Row>({
+  caption,
+  columns,
+  rows,
+  rowKey,
+  dense = false,
+  className,
+  detail,
+  foot,
+}: DataTableProps<Row>) {
   return (
-    <table className={`table stacking${dense ? ' dense' : ''}`} role="table">
+    <table className={`table stacking${dense ? ' dense' : ''}${className ? ` ${className}` : ''}`} role="table">
       {caption ? <caption>{caption}</caption> : null}
       <thead role="rowgroup">
         <tr role="row">
@@ -47,15 +59,29 @@ export function DataTable<Row>({ caption, columns, rows, rowKey, dense = false, 
       </thead>
       <tbody role="rowgroup">
         {rows.map((row) => (
-          <tr key={rowKey(row)} role="row">
-            {columns.map((column) => (
-              <Cell key={column.key} column={column} row={row} />
-            ))}
-          </tr>
+          <Fragment key={rowKey(row)}>
+            <tr role="row">
+              {columns.map((column) => (
+                <Cell key={column.key} column={column} row={row} />
+              ))}
+            </tr>
+            <Detail span={columns.length}>{detail?.(row)}</Detail>
+          </Fragment>
         ))}
       </tbody>
       {foot}
     </table>
+  )
+}
+
+function Detail({ span, children }: { readonly span: number; readonly children: ReactNode }) {
+  if (!children) return null
+  return (
+    <tr role="row" className="detail">
+      <td role="cell" colSpan={span}>
+        {children}
+      </td>
+    </tr>
   )
 }
 

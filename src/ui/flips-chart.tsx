@@ -17,7 +17,7 @@ export function FlipsChart({ rows }: { readonly rows: readonly FlipsRow[] }) {
         <li key={row.flips}>
           <span>{countOf(row.flips, 'flip')}</span>
           <svg aria-hidden="true">
-            <rect className="bar" y="5" height="18" width={percent(row.coins)} />
+            <rect className="count-bar" y="5" height="18" width={percent(row.coins)} />
             <line
               className="theory-edge"
               x1={percent(Number(row.expected))}

@@ -150,7 +150,7 @@ export function CountChart({ counts }: { readonly counts: readonly TicketCount[]
             <span className="vh"> tickets</span>
           </span>
           <svg aria-hidden="true">
-            <rect className="bar" y="5" height="18" width={`${((group.entrants / most) * 100).toFixed(2)}%`} />
+            <rect className="count-bar" y="5" height="18" width={`${((group.entrants / most) * 100).toFixed(2)}%`} />
           </svg>
           <span className="num">
             {formatNumber(group.entrants)}

@@ -39,7 +39,7 @@ export function Draw({ draw }: { readonly draw: DrawPage }) {
     <>
       <Head
         title={`${draw.title}: ${draw.organisation.name}`}
-        description={`${drawLead(draw)} In aid of ${draw.goodCause}.`}
+        description={`${drawLead(draw)} In aid of: ${draw.goodCause}.`}
         path={`/draws/${draw.slug}`}
         type="article"
       />

@@ -4,10 +4,12 @@ import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
 import { ButtonLink } from '#src/ui/button.tsx'
+import { countOf } from '#src/ui/format-number.ts'
 import { Part, Title } from '#src/ui/page.tsx'
 import { Link } from '#src/ui/link.tsx'
 import { SearchForm } from '#src/ui/search-form.tsx'
-import { Bar } from '#src/features/ladder/bar.tsx'
+import { ENTRANTS, exampleWalk } from '#src/features/ladder/example.ts'
+import { Ladder, Winner } from '#src/features/ladder/ladder.tsx'
 import { DrawList } from '#src/features/draws/components/draw-list.tsx'
 import { homeQuery } from './api/get-home.ts'
 
@@ -34,6 +36,7 @@ export function Component() {
           </ButtonLink>
         </p>
       </Title>
+      <Idea />
       {data.upcoming.length > 0 ? (
         <Part title="Soon to be drawn" note={<p>Sealed: nobody can change the list or foresee the result.</p>}>
           <DrawList draws={data.upcoming} />
@@ -49,26 +52,40 @@ export function Component() {
           <DrawList draws={data.open} />
         </Part>
       ) : null}
-      <Part title="The idea">
-        <div className="measure">
-          <p>
-            Split the list in two and toss a coin for it: a coin that falls left exactly as often as the tickets on the
-            left deserve. Here are three tickets against five. Then split the side that won, and toss again, until one
-            entrant is left.
-          </p>
-        </div>
-        <div className="mt-unit-2 mb-unit-2">
-          <Bar coin={[3, 5, '00', 'H']} />
-        </div>
-        <p className="measure">
-          The flips come out of a public random number that did not exist when the list was sealed, and of a secret that
-          was sealed with it. So nobody could steer them, and anybody can toss every coin again.{' '}
-          <Link to="/how-it-works">Follow one from start to end</Link>.
-        </p>
-      </Part>
       <Part title="Find a draw">
         <SearchForm action="/draws" label="Title, organisation, place or cause" query="" />
       </Part>
+    </>
+  )
+}
+
+function Idea() {
+  const walk = exampleWalk()
+  const winner = ENTRANTS[walk.leaf] ?? ENTRANTS[0]
+  return (
+    <>
+      <Part title="The idea">
+        <p className="measure">
+          Split the list in two and toss a coin that falls left exactly as often as the tickets on the left deserve.
+          Split the side that won, and toss again, until one entrant is left. Here are{' '}
+          {countOf(walk.remaining, 'ticket', 'tickets', true)} of {countOf(ENTRANTS.length, 'person', 'people', true)}.{' '}
+          <Link to="/how-it-works">How to read it, flip by flip</Link>
+        </p>
+      </Part>
+      <section className="ladder-part" aria-label="A small draw, coin by coin">
+        <Ladder
+          coins={walk.coins}
+          endNote={countOf(winner.tickets, 'ticket')}
+          end={
+            <Winner name={winner.name}>
+              <p>
+                {winner.tickets} of the {walk.remaining} tickets won. The flips of a real draw come out of a public
+                random number that did not exist when its list was sealed, and of a secret sealed with it.
+              </p>
+            </Winner>
+          }
+        />
+      </section>
     </>
   )
 }

@@ -7,7 +7,7 @@ import { countOf } from '#src/ui/format-number.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Notice } from '#src/ui/notice.tsx'
 import { Part, Title } from '#src/ui/page.tsx'
-import { ENTRANTS, everyWay, exampleWalk } from './example.ts'
+import { ENTRANTS, everyWay, exampleWalk } from '#src/features/ladder/example.ts'
 
 const LEAD =
   'First the list is sealed, then a random number comes into the world, then coins decide. The order is the point: nobody who could change the list could know the number, and nobody who knew the number could change the list.'

@@ -2,7 +2,7 @@ import type { ReactNode } from 'react'
 import { countOf, formatNumber } from '#src/ui/format-number.ts'
 import { Bar } from './bar.tsx'
 import { coinShape, fan, type LadderCoin } from './geometry.ts'
-import { Weighing } from './weighing.tsx'
+import { isLong, Weighing } from './weighing.tsx'
 import { coinWords } from './words.ts'
 
 interface LadderProps {
@@ -45,7 +45,7 @@ function CoinRow({ coin, number, from }: CoinRowProps) {
   const shape = coinShape(coin)
   const words = coinWords(coin)
   const lines = fan(shape)
-  const long = coin[2].length > 6
+  const long = isLong(coin)
   return (
     <li className={`coin-row${from ? ` from-${from}` : ' one'}`}>
       <div className="cap">

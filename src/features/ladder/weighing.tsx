@@ -1,13 +1,23 @@
 import { weigh, type LadderCoin } from './geometry.ts'
 
+const fractionLength = ([left, right]: LadderCoin) => `${left}/${left + right}`.length
+
+/** Whether a weighing needs the panel's whole width: many flips or large numbers. */
+export function isLong(coin: LadderCoin): boolean {
+  return Math.max(148, (fractionLength(coin) + 5) * 11.6) + coin[2].length * 40 > 400
+}
+
 const SIGN = { equal: '=', heads: '<', tails: '>' } as const
 
 /** The flips held against the binary digits of the chance, column by column, the deciding one ringed. */
 export function Weighing({ coin }: { readonly coin: LadderCoin }) {
   const [left, right] = coin
-  const { rungs, rest, goesOn } = weigh(coin)
+  const flips = coin[2].length
+  const { rungs, rest, goesOn } = weigh(coin, flips <= 4 || isLong(coin) ? 4 : 7 - flips)
+  // Long fractions take a line of their own on phones; many flips leave no room for digits still to come.
+  const classes = ['weigh', fractionLength(coin) > 9 && 'deep', flips > 3 && 'many'].filter(Boolean).join(' ')
   return (
-    <div className="weigh" aria-hidden="true">
+    <div className={classes} aria-hidden="true">
       <span className="lab">
         <span>Flips</span>
         <span />

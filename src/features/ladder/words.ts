@@ -1,6 +1,9 @@
 import { capitalise, countOf, formatNumber, numberWord, ordinal } from '#src/ui/format-number.ts'
 import { coinShape, weigh, type LadderCoin } from './geometry.ts'
 
+/** Keeps a figure on the line of the word before it. */
+const NBSP = '\u00a0'
+
 export interface CoinWords {
   /** What happened, in sentences. */
   readonly account: string
@@ -33,12 +36,12 @@ export function coinWords(coin: LadderCoin): CoinWords {
   const its = before === 0 ? 'the digit' : 'its digit'
   if (last.flip === last.digit) {
     return {
-      account: `${lead}${nth}, ${last.flip}, equals ${its}, and the chance has no digit left to beat.`,
+      account: `${lead}${nth},${NBSP}${last.flip}, equals ${its}, and the chance has no digit left to beat.`,
       verdict,
     }
   }
   const compared = last.flip < last.digit ? 'lower' : 'higher'
-  return { account: `${lead}${nth}, ${last.flip}, is ${compared} than ${its}, ${last.digit}.`, verdict }
+  return { account: `${lead}${nth},${NBSP}${last.flip}, is ${compared} than ${its},${NBSP}${last.digit}.`, verdict }
 }
 
 /** A bar for those who hear it. */

@@ -42,12 +42,12 @@ export function Organisation({ organisation }: { readonly organisation: Organisa
         {organisation.demo || organisation.suspended ? (
           <div className="mt-unit-2">
             {organisation.demo ? (
-              <Notice title="A demonstration">
+              <Notice level={2} title="A demonstration">
                 <p>This organisation, its people and its draws are invented to show how the site works.</p>
               </Notice>
             ) : null}
             {organisation.suspended ? (
-              <Notice title="Suspended">
+              <Notice level={2} title="Suspended">
                 <p>
                   The site has suspended this organisation. It can open nothing new and change nothing. What it has
                   sealed is still drawn, and what is published stays.

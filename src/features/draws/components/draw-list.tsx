@@ -22,10 +22,12 @@ export function DrawList({ draws, ownPage = false }: DrawListProps) {
             </h3>
             <p>{cardWords(draw)}</p>
             <p className="note mt-0">
-              {draw.firstPrize && draw.prizes > 0
-                ? `${draw.prizes === 1 ? 'The prize' : `${countOf(draw.prizes, 'prize')}, the first`}: ${draw.firstPrize}. `
-                : ''}
-              In aid of {draw.goodCause}.
+              {draw.firstPrize && draw.prizes > 0 ? (
+                <span className="block">
+                  {draw.prizes === 1 ? 'The prize' : `First of ${countOf(draw.prizes, 'prize')}`}: {draw.firstPrize}
+                </span>
+              ) : null}
+              In aid of: {draw.goodCause}
             </p>
           </div>
           <div>

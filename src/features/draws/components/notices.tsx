@@ -7,12 +7,12 @@ import { lastEvent } from '../words.ts'
 export function DrawNotices({ draw }: { readonly draw: DrawPage }) {
   const notices = [
     draw.demo ? (
-      <Notice key="demo" title="A demonstration">
+      <Notice level={2} key="demo" title="A demonstration">
         <p>This draw shows how the site works. Its people, tickets and prizes are invented.</p>
       </Notice>
     ) : null,
     draw.seal?.beacon?.network === 'development' ? (
-      <Notice key="chain" title="Made with the development chain">
+      <Notice level={2} key="chain" title="Made with the development chain">
         <p>
           The secret of the development chain is public, so anyone could have foretold this result. It shows that the
           arithmetic works, and nothing about chance.
@@ -20,7 +20,7 @@ export function DrawNotices({ draw }: { readonly draw: DrawPage }) {
       </Notice>
     ) : null,
     draw.organisation.suspended ? (
-      <Notice key="suspended" title={`${draw.organisation.name} is suspended`}>
+      <Notice level={2} key="suspended" title={`${draw.organisation.name} is suspended`}>
         <p>
           The site has suspended this organisation. Its people can change nothing here. What it has sealed is still
           drawn, and what is published stays. With questions, write to the promoter.
@@ -44,7 +44,7 @@ function endNotice(draw: DrawPage) {
   const event = lastEvent(draw, draw.state)
   const when = event ? `On ${formatMoment(event.at, draw.timeZone)}. ` : ''
   return (
-    <Notice key="end" title={draw.state === 'cancelled' ? 'Why it was cancelled' : 'Why it failed'}>
+    <Notice level={2} key="end" title={draw.state === 'cancelled' ? 'Why it was cancelled' : 'Why it failed'}>
       <p>
         {when}
         {event?.note ??
@@ -68,7 +68,7 @@ function movedNotice(draw: DrawPage) {
   if (before && draw.seal) {
     const moved = before.drawAt !== draw.seal.drawAt
     return (
-      <Notice key="moved" title={moved ? 'Postponed' : 'Corrected'}>
+      <Notice level={2} key="moved" title={moved ? 'Postponed' : 'Corrected'}>
         <p>
           The seal of {formatMoment(before.sealedAt, draw.timeZone)} was replaced on{' '}
           {formatMoment(draw.seal.sealedAt, draw.timeZone)}
@@ -83,7 +83,7 @@ function movedNotice(draw: DrawPage) {
   const postponed = lastEvent(draw, 'postponed')
   if (!postponed || draw.seal) return null
   return (
-    <Notice key="moved" title="Postponed">
+    <Notice level={2} key="moved" title="Postponed">
       <p>
         On {formatMoment(postponed.at, draw.timeZone)} the promoter changed the dates. The draw is now on{' '}
         {formatMoment(draw.drawAt, draw.timeZone)}. {postponed.note ? `The promoter says why: “${postponed.note}”` : ''}

@@ -1,0 +1,71 @@
+import type { ApiClient, CallInput, Endpoint, ResponseOf } from '#shared/schemas/endpoint.ts'
+import { Problem } from '#shared/schemas/problem.ts'
+import { allDraws, cardOf, logPage, organisationPage, pickPageOf, steepPick } from './fixtures.ts'
+import type { DrawPage } from '#shared/schemas/api/public.ts'
+
+type Params = Record<string, unknown>
+
+function missing(detail: string): Problem {
+  return new Problem({ type: 'about:blank', title: 'Not found', status: 404, detail })
+}
+
+/** Answers the public endpoints out of the fixtures, each parsed by its own schema as the server's answers are. */
+export function fixtureClient(draws: readonly DrawPage[] = allDraws()): ApiClient {
+  const find = (params: Params) => {
+    const draw = draws.find((candidate) => candidate.slug === params.slug)
+    if (!draw) throw missing('No public draw has this address.')
+    return draw
+  }
+  const answers: Record<string, (params: Params, query: Params) => unknown> = {
+    getHome: () => ({
+      upcoming: draws
+        .filter((draw) => draw.state === 'sealed')
+        .slice(0, 2)
+        .map(cardOf),
+      recent: draws
+        .filter((draw) => draw.state === 'drawn')
+        .slice(0, 2)
+        .map(cardOf),
+      open: draws.filter((draw) => draw.state === 'open').map(cardOf),
+    }),
+    searchDraws: (_, query) => {
+      const q = String(query.q ?? '').toLowerCase()
+      const found = draws.filter(
+        (draw) =>
+          `${draw.title} ${draw.organisation.name}`.toLowerCase().includes(q) &&
+          (!query.state || query.state === 'all' || draw.state === query.state),
+      )
+      return { items: found.map(cardOf), total: found.length, page: Number(query.page ?? 1), pageSize: 20 }
+    },
+    getDraw: (params) => find(params),
+    getPick: (params) => {
+      if (params.slug === 'steep-2026') return steepPick()
+      const page = pickPageOf(find(params), Number(params.pick))
+      if (!page) throw missing('This draw has no such pick.')
+      return page
+    },
+    listOrganisations: () => {
+      const { slug, name, about, registration, demo, suspended, draws: own } = organisationPage()
+      return {
+        items: [{ slug, name, about, registration, demo, suspended, draws: own.length }],
+        total: 1,
+        page: 1,
+        pageSize: 20,
+      }
+    },
+    getOrganisation: (params) => {
+      if (params.slug !== 'larkmoor-bells') throw missing('No organisation has this address.')
+      return organisationPage()
+    },
+    getLog: (_, query) => logPage(Number(query.page ?? 1)),
+  }
+  return {
+    async call<E extends Endpoint>(endpoint: E, input: CallInput<E> = {}): Promise<ResponseOf<E>> {
+      const answer = answers[endpoint.name]
+      if (!answer) throw missing(`${endpoint.name} is not in the fixtures.`)
+      const params = endpoint.params.safeParse(input.params ?? {})
+      if (!params.success) throw missing('There is no such address.')
+      return endpoint.response.parse(answer(params.data as Params, (input.query ?? {}) as Params)) as ResponseOf<E>
+    },
+  }
+}
