@@ -22,7 +22,7 @@ import { mountPages } from '#server/http/pages/mount-pages.ts'
 import { PageCache } from '#server/http/pages/page-cache.ts'
 import type { Renderer } from '#server/http/pages/renderer.ts'
 import { createProblemOf } from '#server/http/problem-of.ts'
-import { createSessions, sessionControl, signedInPersonId } from '#server/http/session/sessions.ts'
+import { createSessions, signedInPersonId } from '#server/http/session/sessions.ts'
 import { createSignInGuard, type SignInLimits } from '#server/http/session/sign-in-limits.ts'
 import type { Services } from '#server/services.ts'
 import { findResource, findSignedIn } from '#server/store/queries/people.ts'
@@ -103,13 +103,13 @@ export function createSite(parts: SiteParts): SiteApp {
 
   // From here on it matters who asks.
   app.use(sessions.middleware)
-  app.use(async (request, _response, next) => {
+  app.use(async (request, response, next) => {
     const now = new Date()
     const personId = signedInPersonId(request, now)
     const person = personId === null ? null : await findSignedIn(services.db, personId)
     contexts.set(request, {
       actor: person ? { person, memberships: person.memberships } : NOBODY,
-      session: sessionControl(request, now),
+      session: sessions.control(request, response, now),
       address: request.ip ?? '',
       requestId: String(request.id),
     })

@@ -16,6 +16,8 @@ export interface Upload {
   readonly bytesTotal: number
   /** Throws where the sender goes away half-way, and where the file turns out to be too large. */
   readonly bytes: AsyncIterable<Uint8Array>
+  /** Aborted when they do. */
+  readonly signal: AbortSignal
 }
 
 /** One visitor's request, the same for calls over HTTP and for calls made while a page is rendered. */

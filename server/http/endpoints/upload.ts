@@ -31,10 +31,12 @@ export function receiveUpload(
 ): RequestHandler[] {
   const storage: multer.StorageEngine = {
     _handleFile(request, file, done) {
+      const broken = new AbortController()
       const upload: Upload = {
         fileName: file.originalname.slice(-200),
         bytesTotal: Number(request.headers['content-length'] ?? 0) || 0,
-        bytes: whole(file.stream),
+        bytes: whole(file.stream, broken),
+        signal: broken.signal,
       }
       receive(request, upload).then(
         (answer) => {
@@ -74,10 +76,15 @@ export function receiveUpload(
 
 export const uploadAnswer = (request: Request): unknown => answers.get(request)
 
-async function* whole(stream: AsyncIterable<Uint8Array>): AsyncGenerator<Uint8Array> {
-  for await (const chunk of stream) yield chunk
-  // The parser cuts a file at the limit and ends it as if that were all.
-  if ((stream as { truncated?: boolean }).truncated) throw tooLarge()
+async function* whole(stream: AsyncIterable<Uint8Array>, broken: AbortController): AsyncGenerator<Uint8Array> {
+  try {
+    for await (const chunk of stream) yield chunk
+    // The parser cuts a file at the limit and ends it as if that were all.
+    if ((stream as { truncated?: boolean }).truncated) throw tooLarge()
+  } catch (error) {
+    broken.abort(error)
+    throw error
+  }
 }
 
 function explain(error: unknown): unknown {

@@ -6,7 +6,7 @@ export function mountStaticFiles(app: Express, build: string): void {
   const client = join(build, 'client')
   const options = { index: false, redirect: false, fallthrough: true } as const
   app.get('/assets/*path', express.static(client, { ...options, immutable: true, maxAge: '365d' }))
-  for (const name of ['favicon.svg', 'card.png']) {
+  for (const name of ['favicon.svg', 'card.png', 'entrants-sample.csv']) {
     app.get(`/${name}`, express.static(client, { ...options, maxAge: '1d' }))
   }
 }

@@ -27,6 +27,8 @@ function sendProblem(problem: Problem, request: Request, response: Response): vo
   const { details } = problem
   const wait = retryAfter(problem)
   if (wait !== null) response.setHeader('Retry-After', String(wait))
+  // RFC 9110, 15.5.2: a 401 names a way in. No browser knows this one, so none opens a window of its own.
+  if (details.status === 401) response.setHeader('WWW-Authenticate', 'Session realm="Evenpenny"')
   response.setHeader('Cache-Control', 'no-store')
   response.status(details.status)
   if (wantsPage(request)) {

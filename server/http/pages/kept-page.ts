@@ -12,7 +12,9 @@ export class KeptPage {
   readonly status: number
   /** Bytes that this page keeps in memory, about. */
   readonly weight: number
-  readonly #headers: readonly (readonly [name: string, value: string])[]
+  /** Names and values in turns, as writeHead takes them; of some values, what lies around the nonce. */
+  readonly #headers: readonly string[]
+  readonly #headersWithNonce: readonly (readonly [index: number, parts: readonly string[]])[]
   readonly #nonce: string
   readonly #body: Buffer
   readonly #places: readonly number[]
@@ -21,7 +23,10 @@ export class KeptPage {
   /** `nonce` is the one that the body and the headers were made with; others put in its place must be as long. */
   constructor(status: number, headers: readonly (readonly [string, string])[], body: Buffer, nonce: string) {
     this.status = status
-    this.#headers = headers
+    this.#headers = headers.flat()
+    this.#headersWithNonce = this.#headers.flatMap((text, index) =>
+      text.includes(nonce) ? [[index, text.split(nonce)] as const] : [],
+    )
     this.#nonce = nonce
     this.#body = body
     const places: number[] = []
@@ -30,11 +35,11 @@ export class KeptPage {
     this.weight = body.length * 1.5 + 2000
   }
 
-  headers(nonce: string): [string, string][] {
-    return this.#headers.map(([name, value]) => [
-      name,
-      value.includes(this.#nonce) ? value.replaceAll(this.#nonce, nonce) : value,
-    ])
+  /** Names and values in turns; the array is the caller's. */
+  headers(nonce: string): string[] {
+    const headers = [...this.#headers]
+    for (const [index, parts] of this.#headersWithNonce) headers[index] = parts.join(nonce)
+    return headers
   }
 
   plain(nonce: string): Buffer {

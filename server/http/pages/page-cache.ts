@@ -104,9 +104,9 @@ export function send(page: KeptPage, request: IncomingMessage, response: ServerR
   const headers = page.headers(nonce)
   const packed = acceptsGzip(request.headers['accept-encoding'])
   const body = packed ? page.gzip(nonce) : page.plain(nonce)
-  if (packed) headers.push(['Content-Encoding', 'gzip'])
-  headers.push(['Content-Length', String(body.length)])
-  response.writeHead(page.status, headers.flat())
+  if (packed) headers.push('Content-Encoding', 'gzip')
+  headers.push('Content-Length', String(body.length))
+  response.writeHead(page.status, headers)
   response.end(request.method === 'HEAD' ? undefined : body)
 }
 

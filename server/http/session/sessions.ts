@@ -1,5 +1,5 @@
 import connectPgSimple from 'connect-pg-simple'
-import type { Request, RequestHandler } from 'express'
+import type { Request, RequestHandler, Response } from 'express'
 import session from 'express-session'
 import type { Pool } from 'pg'
 import type { SessionControl } from '#server/http/endpoints/context.ts'
@@ -20,6 +20,8 @@ export const ABSOLUTE_SECONDS = 3 * 24 * 60 * 60
 export interface Sessions {
   readonly cookieName: string
   readonly middleware: RequestHandler
+  /** Starting and ending the session of one request. `now` is the moment of the request. */
+  control(request: Request, response: Response, now: Date): SessionControl
   close(): Promise<void>
 }
 
@@ -43,6 +45,8 @@ export function createSessions(options: {
     errorLog: (...details: unknown[]) => options.onError(details),
   })
   const cookieName = options.https ? '__Host-evenpenny' : 'evenpenny'
+  // Behind a proxy the application's `trust proxy` decides whether the request came over TLS.
+  const cookie = { path: '/', httpOnly: true, sameSite: 'lax', secure: options.https } as const
   return {
     cookieName,
     middleware: session({
@@ -51,8 +55,23 @@ export function createSessions(options: {
       store,
       resave: false,
       saveUninitialized: false,
-      // Behind a proxy the application's `trust proxy` decides whether the request came over TLS.
-      cookie: { path: '/', httpOnly: true, sameSite: 'lax', secure: options.https },
+      cookie,
+    }),
+    control: (request, response, now) => ({
+      get id() {
+        return request.session?.personId ? request.sessionID : null
+      },
+      async start(personId) {
+        // A new id, so that one known from before the sign-in is worth nothing after it.
+        await settle((done) => request.session.regenerate(done))
+        request.session.personId = personId
+        request.session.startedAt = now.getTime()
+        await settle((done) => request.session.save(done))
+      },
+      async end() {
+        await settle((done) => request.session.destroy(done))
+        response.clearCookie(cookieName, cookie)
+      },
     }),
     close: async () => store.close(),
   }
@@ -63,23 +82,6 @@ export function signedInPersonId(request: Request, now: Date): string | null {
   const { personId, startedAt } = request.session
   if (!personId || typeof startedAt !== 'number') return null
   return now.getTime() - startedAt < ABSOLUTE_SECONDS * 1000 ? personId : null
-}
-
-/** Starting and ending the session of one request. `now` is the moment of the request. */
-export function sessionControl(request: Request, now: Date): SessionControl {
-  return {
-    get id() {
-      return request.session.personId ? request.sessionID : null
-    },
-    async start(personId) {
-      // A new id, so that one known from before the sign-in is worth nothing after it.
-      await settle((done) => request.session.regenerate(done))
-      request.session.personId = personId
-      request.session.startedAt = now.getTime()
-      await settle((done) => request.session.save(done))
-    },
-    end: () => settle((done) => request.session.destroy(done)),
-  }
 }
 
 function settle(action: (done: (error?: unknown) => void) => void): Promise<void> {
