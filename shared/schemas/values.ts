@@ -18,7 +18,10 @@ export const uuid = z.uuid()
 export const page = z.coerce.number().int().min(1).max(1_000_000).default(1)
 export const email = z.email('Type an e-mail address, for example ana@group.example.').max(254)
 /** Ticket count of one entrant: PROTOCOL limit 1 … 2^32 − 1. */
-export const tickets = z.int('Type a whole number of tickets.').min(1, 'Type at least 1 ticket.').max(4_294_967_295, 'An entrant holds at most 4,294,967,295 tickets.')
+export const tickets = z
+  .int('Type a whole number of tickets.')
+  .min(1, 'Type at least 1 ticket.')
+  .max(4_294_967_295, 'An entrant holds at most 4,294,967,295 tickets.')
 export const totalTickets = z.int().min(0).max(Number.MAX_SAFE_INTEGER)
 /** One line of plain text: trimmed, NFC, no control or bidirectional characters. */
 export const line = (max: number, what = 'Type something here.') =>

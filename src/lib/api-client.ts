@@ -9,15 +9,7 @@ export function browserApiClient(fetchImplementation: typeof fetch = (...args) =
       if (!response.ok) throw new Problem(await problemOf(response))
       const body: unknown = response.status === 204 ? {} : await response.json().catch(() => undefined)
       const parsed = endpoint.response.safeParse(body)
-      if (!parsed.success) {
-        throw new Problem(
-          failure(
-            502,
-            'An answer nobody expected',
-            'The site answered in a way that this page does not know. Load the page again: it may be older than the site.',
-          ),
-        )
-      }
+      if (!parsed.success) throw new Problem(unexpectedAnswer())
       return parsed.data as ResponseOf<E>
     },
   }
@@ -53,12 +45,25 @@ export function endpointUrl<E extends Endpoint>(endpoint: E, input: CallInput<E>
   return search ? `${path}?${search}` : path
 }
 
-async function problemOf(response: Response): Promise<ProblemDetails> {
-  const parsed = problemSchema.safeParse(await response.json().catch(() => undefined))
-  if (parsed.success) return parsed.data
-  return failure(response.status, 'Something went wrong', 'The site could not answer. Try again in a moment.')
+export function unexpectedAnswer(): ProblemDetails {
+  return failure(
+    502,
+    'An answer nobody expected',
+    'The site answered in a way that this page does not know. Load the page again: it may be older than the site.',
+  )
 }
 
-function failure(status: number, title: string, detail: string): ProblemDetails {
+async function problemOf(response: Response): Promise<ProblemDetails> {
+  return problemFromBody(response.status, await response.json().catch(() => undefined))
+}
+
+/** The problem that a failed answer's body tells of, or plain words where it tells of none. */
+export function problemFromBody(status: number, body: unknown): ProblemDetails {
+  const parsed = problemSchema.safeParse(body)
+  if (parsed.success) return parsed.data
+  return failure(status, 'Something went wrong', 'The site could not answer. Try again in a moment.')
+}
+
+export function failure(status: number, title: string, detail: string): ProblemDetails {
   return { type: 'about:blank', title, status, detail }
 }

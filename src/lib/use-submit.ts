@@ -18,6 +18,8 @@ export interface Submission<E extends Endpoint> {
   readonly failed: boolean
   /** The status of the last failure; null where there is none. */
   readonly status: number | null
+  /** Whether somebody else changed the same thing since it was read: not refused for good, but to be looked at again. */
+  readonly changed: boolean
   /** The message for one field, where it has one. */
   faultOf(field: string): string | undefined
   submit(input: CallInput<E>): void
@@ -49,6 +51,7 @@ export function useSubmit<E extends Endpoint>(
     faults,
     failed: problem !== null,
     status: problem?.status ?? null,
+    changed: problem?.type === '/problems/changed',
     faultOf: (field) => faults.find((fault) => fault.field === field)?.message,
     submit: (input) => {
       if (!mutation.isPending) mutation.mutate(input)
