@@ -48,6 +48,10 @@ export interface Config {
   }
   /** Where local mails are read, null with a real mail server. */
   readonly mailPageUrl: string | null
+  /** How long a job may run before another worker takes it over. */
+  readonly jobExpirySeconds: number
+  /** The point at which the worker kills itself (server/jobs/crash-points.ts): for tests on local fakes only. */
+  readonly crashAt: string | null
 }
 
 type Environment = Readonly<Record<string, string | undefined>>
@@ -84,6 +88,7 @@ function defaults(env: Environment): Environment {
     EVENPENNY_BEACON_NETWORK: 'quicknet',
     EVENPENNY_BEACON_RELAYS: publicRelays,
     EVENPENNY_FAKE_MAIL_PAGE_PORT: '4784',
+    EVENPENNY_JOB_EXPIRY_SECONDS: '300',
   }
   if (env.EVENPENNY_LOCAL !== 'yes') return common
   const data = env.EVENPENNY_DATA ?? '.data'
@@ -136,8 +141,8 @@ function missingProblem(name: VariableName, env: Environment): string {
 }
 
 type Parsed = ReturnType<typeof variables.parse>
-type Whole = Omit<Parsed, 'EVENPENNY_S3_ENDPOINT' | 'EVENPENNY_RETIRED_SIGNING_KEYS'> &
-  Partial<Pick<Parsed, 'EVENPENNY_S3_ENDPOINT' | 'EVENPENNY_RETIRED_SIGNING_KEYS'>>
+type Optional = 'EVENPENNY_S3_ENDPOINT' | 'EVENPENNY_RETIRED_SIGNING_KEYS' | 'EVENPENNY_CRASH_AT'
+type Whole = Omit<Parsed, Optional> & Partial<Pick<Parsed, Optional>>
 
 function assemble(v: Whole): Config {
   return {
@@ -171,6 +176,8 @@ function assemble(v: Whole): Config {
       network: v.EVENPENNY_BEACON_NETWORK === 'development' ? DEVELOPMENT_CHAIN : QUICKNET,
       relays: v.EVENPENNY_BEACON_RELAYS,
     },
+    jobExpirySeconds: v.EVENPENNY_JOB_EXPIRY_SECONDS,
+    crashAt: v.EVENPENNY_CRASH_AT ?? null,
     mailPageUrl: v.EVENPENNY_LOCAL ? `http://127.0.0.1:${v.EVENPENNY_FAKE_MAIL_PAGE_PORT}` : null,
   }
 }
@@ -185,6 +192,9 @@ function unsafeProblems(config: Config): string[] {
     origin: config.origin,
   })
   const problems: string[] = []
+  if (config.crashAt !== null && !(config.local && notLocal.length === 0)) {
+    problems.push('EVENPENNY_CRASH_AT must not be set: it kills the worker, for tests on local fakes.')
+  }
   if (notLocal.length > 0) {
     const why = `${notLocal.join(', ')} ${notLocal.length === 1 ? 'is' : 'are'} not on this machine's loopback address`
     if (config.demo) problems.push(`EVENPENNY_DEMO must be no: demo accounts have known passwords, and ${why}.`)

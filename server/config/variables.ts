@@ -103,6 +103,8 @@ export const variables = z.object({
   EVENPENNY_BEACON_NETWORK: z.enum(['quicknet', 'development'], { error: 'must be quicknet or development.' }),
   EVENPENNY_BEACON_RELAYS: relays,
   EVENPENNY_FAKE_MAIL_PAGE_PORT: port,
+  EVENPENNY_JOB_EXPIRY_SECONDS: wholeNumber(1, 3600),
+  EVENPENNY_CRASH_AT: z.string(),
 })
 
 export type VariableName = keyof typeof variables.shape
@@ -111,6 +113,7 @@ export type VariableName = keyof typeof variables.shape
 export const optionalVariables: ReadonlySet<VariableName> = new Set([
   'EVENPENNY_S3_ENDPOINT',
   'EVENPENNY_RETIRED_SIGNING_KEYS',
+  'EVENPENNY_CRASH_AT',
 ])
 
 /** What to do about one that is missing. */

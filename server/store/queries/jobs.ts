@@ -29,12 +29,15 @@ interface JobRow extends Record<string, unknown> {
   error: string | null
 }
 
-/** The jobs of one draw, newest first. */
+/** The jobs of one draw, newest first: of those that were run again and again, the latest. */
 export async function jobsOf(db: Database, drawId: string): Promise<OfficeDraw['jobs']> {
   const { rows } = await db.execute<JobRow>(sql`
-    select id, name, state, retry_count as tries, coalesce(output ->> 'message', output -> 'value' ->> 'message') as error,
-      extract(epoch from coalesce(completed_on, started_on, start_after))::float8 as seconds
-    from ${ALL_JOBS} where data ->> 'draw' = ${drawId} order by start_after desc, id limit 50`)
+    select * from (
+      select distinct on (name, data) id, name, state, retry_count as tries,
+        coalesce(output ->> 'message', output -> 'value' ->> 'message') as error,
+        extract(epoch from coalesce(completed_on, started_on, start_after))::float8 as seconds
+      from ${ALL_JOBS} where data ->> 'draw' = ${drawId} order by name, data, start_after desc, id) latest
+    order by seconds desc, id limit 50`)
   return rows.map((row) => ({
     id: row.id,
     kind: row.name,
