@@ -24,6 +24,7 @@ import type { Renderer } from '#server/http/pages/renderer.ts'
 import { createProblemOf } from '#server/http/problem-of.ts'
 import { createSessions, signedInPersonId } from '#server/http/session/sessions.ts'
 import { createSignInGuard, type SignInLimits } from '#server/http/session/sign-in-limits.ts'
+import { checkEveryRouteHasItsRule } from '#server/http/routes.ts'
 import type { Services } from '#server/services.ts'
 import { findResource, findSignedIn } from '#server/store/queries/people.ts'
 import { instantOf, wholeSecond } from '#server/time/instants.ts'
@@ -53,7 +54,7 @@ export interface SiteApp {
   close(): Promise<void>
 }
 
-/** Composes the site. Throws where an endpoint has no handler or no rule. */
+/** Composes the site. Throws where an endpoint has no handler, or any route no rule. */
 export function createSite(parts: SiteParts): SiteApp {
   const { config, services, logger } = parts
   const https = config.origin.startsWith('https:')
@@ -127,6 +128,7 @@ export function createSite(parts: SiteParts): SiteApp {
     now: () => instantOf(wholeSecond(services.clock.now())),
     onError: unexpected,
   })
+  checkEveryRouteHasItsRule(app, registry)
   app.use(noSuchEndpoint)
   app.use(errorHandler(problemOf))
 

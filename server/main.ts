@@ -21,7 +21,9 @@ async function main(): Promise<void> {
   const services = createServices(config, { name: 'evenpenny site' })
   const passwords = createPasswords()
   const { version } = JSON.parse(readFileSync(`${ROOT}package.json`, 'utf8')) as { version: string }
-  const development = config.dev ? await (await import('#server/http/pages/development.ts')).startDevelopment(ROOT) : null
+  const development = config.dev
+    ? await (await import('#server/http/pages/development.ts')).startDevelopment(ROOT)
+    : null
   const renderer = development?.renderer ?? (await loadRenderer(BUILD))
   const site = createSite({
     config,
@@ -69,7 +71,7 @@ async function main(): Promise<void> {
 main().catch((error: unknown) => {
   if (error instanceof ConfigError) console.error(error.message)
   else if ((error as NodeJS.ErrnoException).code === 'EADDRINUSE') {
-    console.error('Another program listens on the site\'s port already. Stop it, or set EVENPENNY_PORT to another port.')
+    console.error("Another program listens on the site's port already. Stop it, or set EVENPENNY_PORT to another port.")
   } else console.error(error)
   process.exit(1)
 })

@@ -1,6 +1,6 @@
 import { PasswordsBusyError } from '#server/adapters/passwords/passwords.ts'
 import { CommandError, type CommandErrorCode } from '#server/commands/command-error.ts'
-import { problem } from '#server/http/problems.ts'
+import { notFound, problem } from '#server/http/problems.ts'
 import { refusalOf } from '#server/store/database.ts'
 import { Problem } from '#shared/schemas/problem.ts'
 
@@ -43,6 +43,7 @@ function httpProblem(error: unknown): Problem | null {
   if (error instanceof URIError) return problem(400, 'This address is not written correctly.')
   const { status, type } = (error ?? {}) as { status?: unknown; type?: unknown }
   if (typeof status !== 'number' || status < 400 || status > 499) return null
+  if (status === 404) return notFound()
   switch (type) {
     case 'entity.too.large':
       return problem(413, 'This is more than the site takes in one request. Send it in smaller parts.')

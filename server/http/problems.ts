@@ -30,8 +30,7 @@ export const notFound = () => problem(404, 'There is nothing at this address.')
 /** Fields at fault, named as RFC 6901 pointers without the leading slash. */
 export function invalidFields(error: z.ZodError, status: 400 | 422): Problem {
   const errors = fieldErrors(error)
-  const detail =
-    errors.length === 1 ? 'One field needs another look.' : `${errors.length} fields need another look.`
+  const detail = errors.length === 1 ? 'One field needs another look.' : `${errors.length} fields need another look.`
   return problem(status, detail, { code: 'invalid-fields', title: 'Some fields are not right', errors })
 }
 

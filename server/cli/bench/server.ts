@@ -43,7 +43,8 @@ export async function benchServer(options: ServerBenchOptions = {}): Promise<Ser
     try {
       const once = async (target: string) => {
         const run = await autocannon({ url: target, connections, duration: seconds })
-        if (run.non2xx > 0 || run.errors > 0) throw new Error(`${run.non2xx + run.errors} requests to ${target} failed.`)
+        if (run.non2xx > 0 || run.errors > 0)
+          throw new Error(`${run.non2xx + run.errors} requests to ${target} failed.`)
         return run.requests.average
       }
       const targets = { site: url, bare: `http://127.0.0.1:${bare.port}/` }

@@ -46,12 +46,16 @@ export const DRAW_FILES = [
 ] as const
 export type DrawFile = (typeof DRAW_FILES)[number]
 
-export const fileRules: Readonly<Record<string, Rule>> = Object.fromEntries([
-  ...DRAW_FILES.map((name) => [`/draws/:slug/${name}`, visit]),
-  ['/healthz', visit],
-  ['/robots.txt', visit],
-  ['/sitemap.xml', visit],
-  ['/favicon.svg', visit],
-  ['/card.png', visit],
-  ['/assets/*path', visit],
-])
+/** Files of the build that keep their names. */
+export const FIXED_FILES = ['favicon.svg', 'card.png', 'entrants-sample.csv'] as const
+
+export const fileRules: Readonly<Record<string, Rule>> = Object.fromEntries(
+  [
+    ...DRAW_FILES.map((name) => `/draws/:slug/${name}`),
+    ...FIXED_FILES.map((name) => `/${name}`),
+    '/healthz',
+    '/robots.txt',
+    '/sitemap.xml',
+    '/assets/*path',
+  ].map((path) => [path, visit]),
+)

@@ -49,7 +49,8 @@ function jsonBody(limit: string): RequestHandler {
 }
 
 const onlyJson: RequestHandler = (request, _response, next) => {
-  const hasBody = request.headers['transfer-encoding'] !== undefined || Number(request.headers['content-length'] ?? 0) > 0
+  const hasBody =
+    request.headers['transfer-encoding'] !== undefined || Number(request.headers['content-length'] ?? 0) > 0
   if (hasBody && !request.is('application/json')) {
     return next(problem(415, 'Send the body as application/json.'))
   }
@@ -69,12 +70,7 @@ function uploads(registry: Registry, endpoint: Endpoint, contextOf: ContextOf): 
       }
     },
     ...receiveUpload((request, upload) =>
-      registry.call(
-        endpoint,
-        contextOf(request),
-        { params: request.params, query: request.query, body: {} },
-        upload,
-      ),
+      registry.call(endpoint, contextOf(request), { params: request.params, query: request.query, body: {} }, upload),
     ),
   ]
 }

@@ -78,7 +78,8 @@ export function createRegistry(
     else byName.set(name, { handled, rule })
   }
   for (const name of Object.keys(rules)) if (!names.has(name)) faults.push(`The rule ${name} belongs to no endpoint.`)
-  for (const name of names) if (!handlers.some(({ endpoint }) => endpoint.name === name)) faults.push(`${name} has no handler.`)
+  for (const name of names)
+    if (!handlers.some(({ endpoint }) => endpoint.name === name)) faults.push(`${name} has no handler.`)
   if (faults.length > 0) throw new Error(`The API does not hold together. ${faults.join(' ')}`)
 
   const find = (endpoint: Endpoint) => {

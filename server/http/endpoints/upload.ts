@@ -99,8 +99,13 @@ function explain(error: unknown): unknown {
         return problem(400, 'The upload is not written as a form with one file. Try again from the import page.')
     }
   }
-  if (error instanceof Error && /^(Unexpected end of form|Request (aborted|closed)|Malformed|Multipart:)/.test(error.message)) {
-    return problem(400, 'The upload broke off before its end. Nothing was stored. Try again.', { code: 'upload-broken' })
+  if (
+    error instanceof Error &&
+    /^(Unexpected end of form|Request (aborted|closed)|Malformed|Multipart:)/.test(error.message)
+  ) {
+    return problem(400, 'The upload broke off before its end. Nothing was stored. Try again.', {
+      code: 'upload-broken',
+    })
   }
   return error
 }

@@ -32,7 +32,9 @@ function sendProblem(problem: Problem, request: Request, response: Response): vo
   response.setHeader('Cache-Control', 'no-store')
   response.status(details.status)
   if (wantsPage(request)) {
-    response.type('html').send(plainPage(details.status, details.detail, String(response.getHeader('X-Request-Id') ?? '')))
+    response
+      .type('html')
+      .send(plainPage(details.status, details.detail, String(response.getHeader('X-Request-Id') ?? '')))
   } else {
     response.setHeader('Content-Type', 'application/problem+json; charset=utf-8')
     response.send(JSON.stringify({ ...details, instance: request.path }))

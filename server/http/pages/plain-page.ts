@@ -13,5 +13,4 @@ export function plainPage(status: number, detail: string, requestId: string): st
 `
 }
 
-const escape = (text: string) =>
-  text.replace(/[&<>"']/g, (character) => `&#${character.charCodeAt(0)};`)
+const escape = (text: string) => text.replace(/[&<>"']/g, (character) => `&#${character.charCodeAt(0)};`)

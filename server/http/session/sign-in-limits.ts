@@ -66,7 +66,11 @@ export function createSignInGuard(pool: Pool, limits: SignInLimits = DEFAULT_LIM
     },
     async beforeReset(from, to) {
       await count(resetAddress, hashed(from), 'Too many reset links were asked for from your network.')
-      await count(resetAccount, hashed(to), 'Several reset links were sent to this address already: look among your mail.')
+      await count(
+        resetAccount,
+        hashed(to),
+        'Several reset links were sent to this address already: look among your mail.',
+      )
     },
     beforeToken: (from) => count(token, hashed(from), 'Too many links were tried from your network.'),
   }

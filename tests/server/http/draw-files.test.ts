@@ -54,7 +54,8 @@ afterAll(async () => {
 })
 
 const slugOf = async (row: Row) =>
-  (await database.pool.query<{ slug: string }>('select slug from draw where id = $1', [row.drawId])).rows[0]?.slug as string
+  (await database.pool.query<{ slug: string }>('select slug from draw where id = $1', [row.drawId])).rows[0]
+    ?.slug as string
 
 async function lockArchive(row: Row, alter: (bytes: Uint8Array) => Uint8Array = (bytes) => bytes) {
   const contents = Object.fromEntries(
@@ -103,7 +104,11 @@ describe('the files beside a draw', () => {
     const row = await sealedRow(database.pool)
     const slug = await slugOf(row)
     const seal = await request(app).get(`/draws/${slug}/seal.json`).responseType('blob')
-    expect(createHash('sha256').update(seal.body as Buffer).digest('hex')).toBe(row.digest)
+    expect(
+      createHash('sha256')
+        .update(seal.body as Buffer)
+        .digest('hex'),
+    ).toBe(row.digest)
     expect(seal.headers['content-length']).toBe('40')
     expect(((await request(app).get(`/draws/${slug}/seal.sig`).responseType('blob')).body as Buffer).length).toBe(64)
     const entries = await request(app).get(`/draws/${slug}/entries.csv`).responseType('blob')
@@ -144,7 +149,11 @@ describe('the files beside a draw', () => {
     if (!sums.ok) throw new Error('SHA256SUMS is malformed')
     expect(sums.value.size).toBe(zip.names.length - 1)
     for (const [name, digest] of sums.value) {
-      expect(createHash('sha256').update(await member(name)).digest('hex')).toBe(digest)
+      expect(
+        createHash('sha256')
+          .update(await member(name))
+          .digest('hex'),
+      ).toBe(digest)
     }
 
     await database.pool.query('delete from opened_label where draw_id = $1', [row.drawId])
@@ -172,7 +181,9 @@ describe('the files beside a draw', () => {
     const row = await drawnRow(database.pool)
     await lockArchive(row)
     const without = site({ find: () => undefined } as unknown as SigningKeys)
-    const key = await request(without).get(`/draws/${await slugOf(row)}/site-key.pem`).responseType('blob')
+    const key = await request(without)
+      .get(`/draws/${await slugOf(row)}/site-key.pem`)
+      .responseType('blob')
     expect((key.body as Buffer).toString()).toContain(`site-key.pem of ${row.drawId}`)
   })
 

@@ -17,7 +17,7 @@ describe('KeptPage', () => {
   it('puts the new nonce into every place, and nothing else changes', () => {
     const nonce = newNonce()
     expect(page.plain(nonce).toString()).toBe(html(nonce))
-    expect(page.headers(nonce)).toEqual([['Content-Security-Policy', `script-src 'nonce-${nonce}'`]])
+    expect(page.headers(nonce)).toEqual(['Content-Security-Policy', `script-src 'nonce-${nonce}'`])
   })
 
   it('never shows the nonce that it was made with', () => {

@@ -35,14 +35,20 @@ const context = (actor: Actor): RequestContext => ({
 })
 
 let asked: string[] = []
-const registry = (answer: unknown = { name: 'x', page: 1, passwordHash: 'secret' }, rules: Record<string, Rule> = { rename: edit }) =>
+const registry = (
+  answer: unknown = { name: 'x', page: 1, passwordHash: 'secret' },
+  rules: Record<string, Rule> = { rename: edit },
+) =>
   createRegistry([rename], rules, [handle(rename, async () => answer as never)], async (on, key) => {
     asked.push(`${on} ${key}`)
     return key === ID ? ours : null
   })
 
-const call = (input: Partial<{ params: unknown; query: unknown; body: unknown }>, actor = organiser, made = registry()) =>
-  made.call(rename, context(actor), { params: { draw: ID }, query: {}, body: { name: 'x' }, ...input })
+const call = (
+  input: Partial<{ params: unknown; query: unknown; body: unknown }>,
+  actor = organiser,
+  made = registry(),
+) => made.call(rename, context(actor), { params: { draw: ID }, query: {}, body: { name: 'x' }, ...input })
 
 const problemOf = async (calling: Promise<unknown>) => {
   const error = await calling.then(
@@ -97,7 +103,11 @@ describe('createRegistry', () => {
 
   it('names each field at fault, with what to do', async () => {
     const details = await problemOf(call({ body: { name: '', prizes: [{ quantity: 1 }, { quantity: 1.5 }, {}] } }))
-    expect(details).toMatchObject({ status: 422, type: '/problems/invalid-fields', detail: '3 fields need another look.' })
+    expect(details).toMatchObject({
+      status: 422,
+      type: '/problems/invalid-fields',
+      detail: '3 fields need another look.',
+    })
     expect(details.errors).toEqual([
       { field: 'name', message: 'Name it.' },
       { field: 'prizes/1/quantity', message: 'Type a whole number.' },
@@ -107,6 +117,8 @@ describe('createRegistry', () => {
       status: 400,
       errors: [{ field: 'page', message: 'The lowest value is 1.' }],
     })
-    expect((await problemOf(call({ body: { prizes: [] } }))).errors).toEqual([{ field: 'name', message: 'Fill this in.' }])
+    expect((await problemOf(call({ body: { prizes: [] } }))).errors).toEqual([
+      { field: 'name', message: 'Fill this in.' },
+    ])
   })
 })

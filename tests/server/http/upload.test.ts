@@ -57,7 +57,9 @@ describe('receiveUpload', () => {
 
   it('refuses one byte more than the limit with 413, and its reader never sees a whole file', async () => {
     const seen = nothing()
-    const answer = await request(receiving(seen)).post('/').attach('file', Buffer.alloc(LIMIT + 1, 'a'), 'a.csv')
+    const answer = await request(receiving(seen))
+      .post('/')
+      .attach('file', Buffer.alloc(LIMIT + 1, 'a'), 'a.csv')
     expect(answer.status).toBe(413)
     expect(answer.type).toBe('application/problem+json')
     expect(answer.body).toMatchObject({ errors: [{ field: 'file', message: 'Choose a file of at most 200 MB.' }] })
@@ -71,7 +73,12 @@ describe('receiveUpload', () => {
     const { port } = server.address() as AddressInfo
     const status = await new Promise<number | undefined>((resolve, reject) => {
       const asking = httpRequest(
-        { port, host: '127.0.0.1', method: 'POST', headers: { 'content-type': 'multipart/form-data; boundary=x', 'content-length': 300_000_000 } },
+        {
+          port,
+          host: '127.0.0.1',
+          method: 'POST',
+          headers: { 'content-type': 'multipart/form-data; boundary=x', 'content-length': 300_000_000 },
+        },
         (response) => {
           resolve(response.statusCode)
           asking.destroy()
