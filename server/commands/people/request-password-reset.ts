@@ -36,7 +36,7 @@ export async function sendPasswordReset(
   })
 }
 
-async function sendLink(
+export async function sendLink(
   tx: Transaction,
   services: Services,
   actor: CommandActor,
