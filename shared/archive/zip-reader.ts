@@ -1,7 +1,7 @@
 import { ArchiveError } from '#shared/archive/archive-error.ts'
 import type { ByteSource, ByteTransform } from '#shared/archive/byte-source.ts'
 import { inflateInJavaScript } from '#shared/archive/codec.ts'
-import { crc32 } from '#shared/archive/crc32.ts'
+import { crc32 as crc32InJavaScript } from '#shared/archive/crc32.ts'
 import type { MembersSource } from '#shared/archive/members-source.ts'
 import { type DirectoryEntry, readDirectory } from '#shared/archive/zip-directory.ts'
 import type { PackedZipMember } from '#shared/archive/zip-writer.ts'
@@ -13,6 +13,8 @@ export interface ZipReaderOptions {
    * the last block, and yield as it goes.
    */
   readonly inflate?: ByteTransform
+  /** CRC-32 of bytes after others of a CRC; plain JavaScript where none is given. */
+  readonly crc32?: (bytes: Uint8Array, previous: number) => number
 }
 
 /** A zip as a source of members, which can also give them as they are packed. */
@@ -35,7 +37,7 @@ export async function openZip(source: ByteSource, options: ZipReaderOptions = {}
   return {
     names: [...entries.keys()],
     size: (name) => find(name).unpacked,
-    open: (name) => unpack(source, find(name), options.inflate ?? inflateInJavaScript),
+    open: (name) => unpack(source, find(name), options),
     packed: (name) => {
       const entry = find(name)
       const { crc, packed, unpacked } = entry
@@ -48,9 +50,10 @@ export async function openZip(source: ByteSource, options: ZipReaderOptions = {}
 async function* unpack(
   source: ByteSource,
   entry: DirectoryEntry,
-  inflate: ByteTransform,
+  options: ZipReaderOptions,
 ): AsyncGenerator<Uint8Array, void, undefined> {
   const packed = readChunks(source, entry)
+  const { inflate = inflateInJavaScript, crc32 = crc32InJavaScript } = options
   let crc = 0
   let size = 0
   try {

@@ -1,7 +1,14 @@
 import { Readable, type Transform } from 'node:stream'
-import { createDeflateRaw, createInflateRaw } from 'node:zlib'
+import { crc32, createDeflateRaw, createInflateRaw } from 'node:zlib'
 import { ArchiveError } from '#shared/archive/archive-error.ts'
+import type { ZipReaderOptions } from '#shared/archive/zip-reader.ts'
 import type { ByteTransform } from '#shared/archive/byte-source.ts'
+
+/** What a zip reader needs, by zlib. */
+export const zlibReader: ZipReaderOptions = {
+  inflate: (chunks) => inflateWithZlib(chunks),
+  crc32: (bytes, previous) => crc32(bytes, previous),
+}
 
 /** Raw deflate by zlib. */
 export const deflateWithZlib: ByteTransform = async function* (chunks) {

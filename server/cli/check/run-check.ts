@@ -4,7 +4,7 @@ import { basename, join } from 'node:path'
 import { nodeCheckTools } from '#server/adapters/archive/check-tools.ts'
 import { openFileSource } from '#server/adapters/archive/file-source.ts'
 import { openFolder } from '#server/adapters/archive/folder-source.ts'
-import { inflateWithZlib } from '#server/adapters/archive/zlib-codec.ts'
+import { zlibReader } from '#server/adapters/archive/zlib-codec.ts'
 import { CHECK_USAGE, readCheckArguments, UsageError } from '#server/cli/check/arguments.ts'
 import { fetchArchive, FetchError, type FetchLimits } from '#server/cli/check/fetch-archive.ts'
 import type { MembersSource } from '#shared/archive/members-source.ts'
@@ -63,7 +63,7 @@ export async function checkPath(
   if (found.isDirectory()) return run(() => openFolder(path))
   const file = await openFileSource(path)
   try {
-    return await run(() => openZip(file, { inflate: inflateWithZlib }))
+    return await run(() => openZip(file, zlibReader))
   } finally {
     await file.close()
   }

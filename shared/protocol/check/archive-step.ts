@@ -1,8 +1,13 @@
 import { ArchiveError } from '#shared/archive/archive-error.ts'
 import { ARCHIVE_MEMBERS, isArchiveMember } from '#shared/archive/members.ts'
-import { digestOf, parseSums, SUMS_MEMBER } from '#shared/archive/sums.ts'
+import { parseSums, SUMS_MEMBER } from '#shared/archive/sums.ts'
+import { toHex } from '#shared/bytes/hex.ts'
+import { createEntriesReader } from '#shared/protocol/check/entries-reader.ts'
 import { need, StepFailure } from '#shared/protocol/check/failure.ts'
 import { type CheckStep, memberBytes, throwIfCancelled } from '#shared/protocol/check/state.ts'
+
+/** Bytes between two tellings of progress. */
+const TELL_EVERY = 2 ** 20
 
 /** Step 1: the zip, its members and SHA256SUMS (PROTOCOL section 9). Unpacks everything once. */
 export const checkMembers: CheckStep = async (state) => {
@@ -26,13 +31,23 @@ export const checkMembers: CheckStep = async (state) => {
     if (expected === undefined) {
       throw new StepFailure('sum-missing', SUMS_MEMBER, `It does not name ${name}, which is in the archive.`)
     }
-    throwIfCancelled(state)
-    state.progress(done, total)
-    if ((await digestOf(source.open(name), state.tools.createSha256())) !== expected) {
+    const hash = state.tools.createSha256()
+    const entries = name === 'entries.csv' ? createEntriesReader(source.size(name)) : null
+    let told = done
+    for await (const chunk of source.open(name)) {
+      hash.update(chunk)
+      entries?.push(chunk)
+      done += chunk.length
+      if (done - told < TELL_EVERY) continue
+      told = done
+      throwIfCancelled(state)
+      state.progress(done, total)
+      await state.tools.pause?.()
+    }
+    if (toHex(hash.digest()) !== expected) {
       throw new StepFailure('sum-mismatch', name, `${name} does not have the digest in ${SUMS_MEMBER}.`)
     }
-    done += source.size(name)
-    await state.tools.pause?.()
+    if (entries !== null) state.entries = entries.end()
   }
   state.progress(total, total)
   state.notExamined = [...source.names.filter((name) => !isArchiveMember(name)), ...(source.strays ?? [])]

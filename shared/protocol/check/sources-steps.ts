@@ -51,7 +51,7 @@ export const checkTossRounds: CheckStep = (state) => {
   /** Under `tossed` the rounds must also suffice for the walks; step 9 compares these coin by coin. */
   function flipsOfTossedWalks(): number {
     const { prizes, reserves, rule } = state.seal
-    const input = { tickets: state.tickets, prizes, reserves, rule }
+    const input = { tickets: state.entries.tickets, prizes, reserves, rule }
     const walks = drawPicks(state.tools.sha256, { ...input, flips: { kind: 'tossed', bits: tossBits(rounds ?? []) } })
     let step = walks.next()
     while (step.done !== true) step = walks.next()

@@ -1,5 +1,6 @@
 import { ArchiveError } from '#shared/archive/archive-error.ts'
 import { type MembersSource, readMember } from '#shared/archive/members-source.ts'
+import type { ReadEntries } from '#shared/protocol/check/entries-reader.ts'
 import type { CheckTools } from '#shared/protocol/check/tools.ts'
 import { StepFailure } from '#shared/protocol/check/failure.ts'
 import type { DrawResult } from '#shared/protocol/result.ts'
@@ -46,9 +47,8 @@ export interface CheckState {
   seal: Seal
   sealDigest: Uint8Array
   sealDigestHex: string
-  /** Sealed tickets and 32-byte entry commitments, leaf by leaf. */
-  tickets: Float64Array
-  entryCommits: Uint8Array
+  /** The list: read in step 1, where its bytes go by anyway, and sound from step 4 on. */
+  entries: ReadEntries
   result: DrawResult
   beaconRandomness: Uint8Array | null
   tossBits: readonly number[] | null
@@ -84,23 +84,6 @@ export async function memberBytes(state: CheckState, name: keyof typeof MEMBER_L
 /** Throws where the check was stopped. */
 export function throwIfCancelled(state: CheckState): void {
   if (state.options.signal?.aborted) throw new CheckCancelled()
-}
-
-/** A large member in pieces, with progress told, other work let in and the signal looked at between them. */
-export async function* streamMember(state: CheckState, name: string): AsyncGenerator<Uint8Array> {
-  const total = state.source.size(name)
-  let done = 0
-  let told = 0
-  for await (const chunk of state.source.open(name)) {
-    yield chunk
-    done += chunk.length
-    if (done - told < 2 ** 20) continue
-    told = done
-    throwIfCancelled(state)
-    state.progress(done, total)
-    await state.tools.pause?.()
-  }
-  state.progress(total, total)
 }
 
 /** An ArchiveError as the failure of the step in which it came up. */

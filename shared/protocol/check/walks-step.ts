@@ -13,7 +13,7 @@ const MEMBER = 'transcript.jsonl'
 export const checkWalks: CheckStep = async (state) => {
   const { prizes, reserves, rule } = state.seal
   const picks = drawPicks(state.tools.sha256, {
-    tickets: state.tickets,
+    tickets: state.entries.tickets,
     rule,
     prizes,
     reserves,
@@ -86,7 +86,7 @@ function compare(state: CheckState, pick: DrawPick): void {
   }
   differs('leaf-wrong', 'leaf', stated.leaf, pick.leaf)
   differs('remaining-wrong', 'remaining', stated.remaining, pick.remaining)
-  differs('tickets-wrong', 'tickets', stated.tickets, state.tickets[pick.leaf])
+  differs('tickets-wrong', 'tickets', stated.tickets, state.entries.tickets[pick.leaf])
 }
 
 function missing(at: string, message: string): StepFailure {
