@@ -646,8 +646,7 @@ function checkSeal(c) {
   text(seal.organisation.name, at('organisation.name'))
   if (seal.organisation.registration !== null) text(seal.organisation.registration, at('organisation.registration'))
   text(seal.title, at('title'))
-  if (hex(seal.key, 32, at('key')) !== c.fingerprint)
-    fail(at('key'), 'the seal names another key than the one in site-key.pem.')
+  hex(seal.key, 32, at('key')) // step 2 has compared it with site-key.pem
 
   c.drawAt = time(seal.drawAt, at('drawAt'))
   if (c.drawAt - time(seal.sealedAt, at('sealedAt')) < 120)

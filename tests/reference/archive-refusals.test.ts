@@ -55,18 +55,22 @@ describe('a zip that two programs could read differently is refused:', () => {
     change(zip)
     return zip
   }
-  const shiftedBy = (zip: Buffer, bytes: number): Buffer => {
-    zip.writeUInt32LE(directory + bytes, zip.length - 6)
+  /** A byte put in at a place, with every offset behind it put right. */
+  const inserted = (place: number): Buffer => {
+    const zip = Buffer.concat([made.zip.subarray(0, place), utf8('x'), made.zip.subarray(place)])
+    for (let line = directory + 1; zip.readUInt32LE(line) === 0x02014b50; line += 46 + zip.readUInt16LE(line + 28)) {
+      const offset = zip.readUInt32LE(line + 42)
+      if (offset >= place) zip.writeUInt32LE(offset + 1, line + 42)
+    }
+    zip.writeUInt32LE(directory + 1, zip.length - 6)
     return zip
   }
   const rows: [string, () => Buffer, string][] = [
     ['bytes before it', () => Buffer.concat([utf8('#!'), made.zip]), '1 the zip file'],
     ['bytes behind it', () => Buffer.concat([made.zip, utf8('x')]), '1 the zip file'],
-    [
-      'bytes before the directory',
-      () => shiftedBy(Buffer.concat([made.zip.subarray(0, directory), utf8('x'), made.zip.subarray(directory)]), 1),
-      '1 the zip file',
-    ],
+    ['bytes before the first member', () => inserted(0), '1 the member seal.json'],
+    ['bytes between two members', () => inserted(made.zip.indexOf('seal.sig') - 30), '1 the member seal.sig'],
+    ['bytes before the directory', () => inserted(directory), '1 the zip file'],
     ['a comment', () => edit((zip) => zip.writeUInt16LE(1, end + 20)), '1 the zip file'],
     ['a member count too low', () => edit((zip) => zip.writeUInt16LE(12, end + 8)), '1 the zip file'],
     ['another name in the local header', () => edit((zip) => zip.write('SEAL.json', 30)), '1 the member seal.json'],
@@ -141,23 +145,20 @@ describe('a zip that two programs could read differently is refused:', () => {
   })
 
   it('bytes behind the compressed data', async () => {
-    // seal.sig is the second member, and so deflated: make room for one byte more inside its data.
-    const bytes = made.files.get('seal.sig') ?? Buffer.alloc(0)
-    const packed = deflateRawSync(bytes).length
+    // seal.sig is the second member, and so deflated: one byte more inside its data, and both headers say so.
+    const packed = deflateRawSync(made.files.get('seal.sig') ?? Buffer.alloc(0)).length
     const name = made.zip.indexOf('seal.sig')
-    const behind = name + 8 + packed
-    const zip = Buffer.concat([made.zip.subarray(0, behind), utf8('x'), made.zip.subarray(behind)])
+    const zip = inserted(name + 8 + packed)
     zip.writeUInt32LE(packed + 1, name - 30 + 18)
-    const moved = directory + 1
-    let line = moved
-    while (zip.readUInt32LE(line) === 0x02014b50) {
-      if (line !== moved) {
-        const offset = zip.readUInt32LE(line + 42)
-        if (offset > name) zip.writeUInt32LE(offset + 1, line + 42)
-        else zip.writeUInt32LE(packed + 1, line + 20)
-      }
-      line += 46 + zip.readUInt16LE(line + 28)
-    }
-    expect(await step(shiftedBy(zip, 1))).toBe('1 the member seal.sig')
+    const firstLine = 46 + 'seal.json'.length
+    zip.writeUInt32LE(packed + 1, directory + 1 + firstLine + 20)
+    expect(await step(zip)).toBe('1 the member seal.sig')
+  })
+
+  it('an extra field, unless it is a time', async () => {
+    const field = (id: string): Buffer => unhex(`${id}0500010000cc65`)
+    expect(await step(writeZip(made.files, field('5554')))).toBe('holds')
+    expect(await step(writeZip(made.files, field('7570')))).toBe('1 the member seal.json')
+    expect(await step(writeZip(made.files, field('5554').subarray(0, 7)))).toBe('1 the member seal.json')
   })
 })

@@ -18,6 +18,7 @@ describe('steps 5 to 9 refuse a result with', () => {
       (r) => void (inside(r, 'reveal').beacon = { round: 1, signature: '0' }),
       '5 result.json reveal.beacon',
     ],
+    [base, 'item 0', (r) => void (inside(r, 'picks', 0, 'award').item = 0), '5 result.json picks[0].award'],
     [
       base,
       'both kinds of award',

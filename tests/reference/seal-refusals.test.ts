@@ -22,6 +22,7 @@ describe('step 3 refuses a seal with', () => {
     [base, 'a control character', (s) => void (s.title = 'a\u0007b'), ''],
     [base, 'a line separator', (s) => void (s.title = 'a\u2028b'), ''],
     [base, 'a lone surrogate', (s) => void (s.title = 'a\ud83db'), ''],
+    [base, 'no key', (s) => void (s.key = null), 'key'],
     [base, 'no title', (s) => void (s.title = ''), 'title'],
     [
       base,
@@ -115,6 +116,11 @@ describe('step 3 refuses a seal with', () => {
 const roundOf = (seal: Changeable): number => Number(inside(seal, 'sources', 'beacon').round)
 const before = (time: Json | undefined, seconds: number): string =>
   new Date(Date.parse(String(time)) - seconds * 1000).toISOString().replace('.000Z', 'Z')
+
+it('is refused at step 2 where it names another key than the one that signed it', async () => {
+  const change = { seal: (s: Changeable) => void (s.key = '0'.repeat(64)) }
+  expect(await step(makeArchive({ ...base, change }).zip)).toBe('2 seal.json key')
+})
 
 it('holds at the edges of the rules that step 3 refuses beyond', async () => {
   const edges = (s: Changeable): void =>

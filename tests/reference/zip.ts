@@ -17,8 +17,8 @@ const le = (value: number, bytes: number): Buffer => {
   return out
 }
 
-/** Members are stored and deflated by turns, so that both ways of reading are used. */
-export function writeZip(files: ReadonlyMap<string, Uint8Array>): Buffer {
+/** Members are stored and deflated by turns, so that both ways of reading are used. `extra` goes into every header. */
+export function writeZip(files: ReadonlyMap<string, Uint8Array>, extra: Uint8Array = new Uint8Array()): Buffer {
   const locals: Buffer[] = []
   const lines: Buffer[] = []
   let offset = 0
@@ -28,11 +28,11 @@ export function writeZip(files: ReadonlyMap<string, Uint8Array>): Buffer {
     const common = Buffer.concat([
       ...[20, 0, deflated ? 8 : 0, 0, 0x5c21].map((value) => le(value, 2)),
       ...[crc32(bytes), data.length, bytes.length].map((value) => le(value, 4)),
-      ...[name.length, 0].map((value) => le(value, 2)),
+      ...[name.length, extra.length].map((value) => le(value, 2)),
     ])
-    const local = Buffer.concat([le(0x04034b50, 4), common, Buffer.from(name), data])
+    const local = Buffer.concat([le(0x04034b50, 4), common, Buffer.from(name), extra, data])
     const rest = Buffer.concat([le(0, 2), le(0, 2), le(0, 2), le(0, 4), le(offset, 4)])
-    lines.push(Buffer.concat([le(0x02014b50, 4), le(20, 2), common, rest, Buffer.from(name)]))
+    lines.push(Buffer.concat([le(0x02014b50, 4), le(20, 2), common, rest, Buffer.from(name), extra]))
     locals.push(local)
     offset += local.length
     deflated = !deflated
