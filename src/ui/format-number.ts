@@ -6,12 +6,21 @@ export function formatNumber(value: number | bigint): string {
 }
 
 const SYMBOLS: Record<string, string> = { GBP: '£', EUR: '€', USD: '$', JPY: '¥' }
-/** ISO 4217: currencies whose minor unit is not a hundredth. */
-const MINOR_DIGITS: Record<string, number> = { JPY: 0, KRW: 0, ISK: 0, CLP: 0, BHD: 3, KWD: 3, JOD: 3, TND: 3 }
+/** ISO 4217, list one: currencies whose minor unit is not a hundredth. */
+const MINOR_DIGITS = new Map(
+  Object.entries({
+    0: 'BIF CLP DJF GNF ISK JPY KMF KRW PYG RWF UGX UYI VND VUV XAF XOF XPF',
+    3: 'BHD IQD JOD KWD LYD OMR TND',
+    4: 'CLF UYW',
+  }).flatMap(([digits, currencies]) => currencies.split(' ').map((currency) => [currency, Number(digits)] as const)),
+)
+
+/** How many decimals an amount in this currency has. */
+export const minorDigits = (currency: string): number => MINOR_DIGITS.get(currency) ?? 2
 
 /** An amount in minor units as people write it: £25, £2.50, 1,200 NOK. */
 export function formatMoney(amount: { readonly minor: number; readonly currency: string }): string {
-  const places = MINOR_DIGITS[amount.currency] ?? 2
+  const places = minorDigits(amount.currency)
   const unit = 10 ** places
   const whole = Math.floor(amount.minor / unit)
   const rest = amount.minor % unit

@@ -1,24 +1,9 @@
-/** Minor units of a currency in ISO 4217: two digits for most, none or three for a few. */
-const DIGITS: Record<string, number> = {
-  JPY: 0,
-  KRW: 0,
-  ISK: 0,
-  CLP: 0,
-  VND: 0,
-  UGX: 0,
-  BHD: 3,
-  KWD: 3,
-  OMR: 3,
-  JOD: 3,
-  TND: 3,
-}
-
-const digitsOf = (currency: string) => DIGITS[currency] ?? 2
+import { minorDigits } from '#src/ui/format-number.ts'
 
 /** How an amount is typed: `2.50`. Empty where there is none. */
 export function moneyText(amount: { readonly minor: number; readonly currency: string } | null): string {
   if (!amount) return ''
-  const digits = digitsOf(amount.currency)
+  const digits = minorDigits(amount.currency)
   const padded = String(amount.minor).padStart(digits + 1, '0')
   return digits === 0 ? padded : `${padded.slice(0, -digits)}.${padded.slice(-digits)}`
 }
@@ -35,7 +20,7 @@ export function parseMoney(text: string, currency: string): { minor: number; cur
   if (bare === '') return text.trim() === '' ? null : undefined
   const match = /^(\d{1,3}(?:,\d{3})+|\d+)(?:\.(\d+))?$/.exec(bare)
   if (!match) return undefined
-  const digits = digitsOf(currency)
+  const digits = minorDigits(currency)
   const decimals = match[2] ?? ''
   if (decimals.length > digits) return undefined
   const minor = Number((match[1] as string).replaceAll(',', '') + decimals.padEnd(digits, '0'))

@@ -110,7 +110,7 @@ function List() {
           <Empty title="Nobody is in the list yet.">
             {mayChange ? (
               <p>
-                <Link to={drawPath(organisation, draw.id, 'import')}>Bring in a file</Link> from your spreadsheet, or
+                <Link to={drawPath(organisation, draw.id, 'import')}>Bring in a sheet</Link> from your spreadsheet, or
                 add entrants one by one from their counterfoils.
               </p>
             ) : null}
@@ -219,7 +219,7 @@ function ListActions({ mayChange, why, importPath, adding, onAdd }: ListActionsP
   if (!mayChange) return <p className="measure waits mt-0">{why}</p>
   return (
     <p className="buttons">
-      <ButtonLink to={importPath}>Bring in a file</ButtonLink>
+      <ButtonLink to={importPath}>Bring in a sheet</ButtonLink>
       <Button quiet id={ADD_BUTTON} aria-expanded={adding} onClick={onAdd}>
         Add an entrant
       </Button>

@@ -14,7 +14,7 @@ interface EarlierImportsProps {
 export function EarlierImports({ imports, timeZone, href }: EarlierImportsProps) {
   if (imports.length === 0) return null
   return (
-    <Part title="Files so far" note="Newest first">
+    <Part title="Sheets so far" note="Newest first">
       <ul className="account">
         {imports.map((view) => (
           <li key={view.id}>

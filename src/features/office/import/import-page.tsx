@@ -112,7 +112,7 @@ function NextStep({ view, entrants, upload }: NextStepProps) {
         <>
           <p className="measure">
             Put the rows below right in your spreadsheet, save it again as &ldquo;CSV UTF-8&rdquo; and{' '}
-            <Link to={upload}>bring in the new file</Link>. A file joins the list whole or not at all.
+            <Link to={upload}>bring in the new one</Link>. A file joins the list whole or not at all.
           </p>
           <ImportDecision view={view} />
         </>
@@ -121,16 +121,14 @@ function NextStep({ view, entrants, upload }: NextStepProps) {
       return (
         <p className="buttons">
           <ButtonLink to={entrants}>See the list</ButtonLink>
-          <Link to={upload}>Bring in another file</Link>
+          <Link to={upload}>Bring in another sheet</Link>
         </p>
       )
     case 'discarded':
     case 'failed':
       return (
         <p className="buttons">
-          <ButtonLink to={upload}>
-            {view.state === 'failed' ? 'Send the file again' : 'Bring in another file'}
-          </ButtonLink>
+          <ButtonLink to={upload}>{view.state === 'failed' ? 'Upload it again' : 'Bring in another sheet'}</ButtonLink>
           <Link to={entrants}>Back to the entrants</Link>
         </p>
       )

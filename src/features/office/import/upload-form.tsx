@@ -69,7 +69,7 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
         void send()
       }}
     >
-      {failure ? <ErrorSummary title="The file was not brought in" detail={failure} /> : null}
+      {failure ? <ErrorSummary title="The file did not arrive" detail={failure} /> : null}
       {sending && file ? (
         <Progress file={file} sending={sending} onStop={() => upload.current?.stop()} />
       ) : (
@@ -89,7 +89,7 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
           >
             <Field
               name="file"
-              label="File of entrants"
+              label="Sheet of entrants"
               hint="CSV, at most 200 MB. Choose it, or drop it here."
               error={fault ?? undefined}
             >
@@ -112,7 +112,7 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
             ) : null}
           </div>
           <p className="buttons">
-            <Button type="submit">{failure ? 'Send it again' : 'Send it and look it through'}</Button>
+            <Button type="submit">{failure ? 'Upload it again' : 'Upload it, and look through it'}</Button>
             <span className="note">Nothing joins the list before you have seen what is in it.</span>
           </p>
         </>

@@ -30,9 +30,9 @@ export function Component() {
   const why = whyFixed(draw)
   return (
     <>
-      <Head title={`Bring in a file: ${draw.title}`} description="Entrants from a spreadsheet." />
+      <Head title={`Bring in a sheet: ${draw.title}`} description="Entrants from a spreadsheet." />
       <Part
-        title="Bring in a file"
+        title="Bring in a sheet"
         note={<Link to={drawPath(organisation, draw.id, 'entrants')}>Back to the entrants</Link>}
       >
         {why ? (
@@ -56,7 +56,7 @@ export function Component() {
 
 function Columns() {
   return (
-    <Part title="What the file holds" note="One row for each entrant. The first row names the columns.">
+    <Part title="What the sheet holds" note="One row for each entrant. The first row names the columns.">
       <DataTable
         dense
         className="columns"
