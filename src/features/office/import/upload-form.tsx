@@ -25,6 +25,7 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
   const [over, setOver] = useState(false)
   const [fault, setFault] = useState<string | null>(null)
   const [failure, setFailure] = useState<string | null>(null)
+  const [stopped, setStopped] = useState(false)
   const [sending, setSending] = useState<Sending | null>(null)
   const upload = useRef<Upload<typeof uploadImport> | null>(null)
   const input = useRef<HTMLInputElement>(null)
@@ -44,6 +45,7 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
     }
     if (fault) return input.current?.focus()
     setFailure(null)
+    setStopped(false)
     setSending({ sent: 0, total: file.size })
     const started = uploadFile(uploadImport, { params: { draw } }, file, (sent, total) => setSending({ sent, total }))
     upload.current = started
@@ -52,6 +54,7 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
     } catch (error) {
       const details = detailsOf(error as Error)
       const atField = details.errors?.find(({ field }) => field === 'file')
+      setStopped(details.status === STOPPED)
       setFailure(details.status === STOPPED ? null : (atField?.message ?? details.detail))
     } finally {
       upload.current = null
@@ -113,7 +116,11 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
           </div>
           <p className="buttons">
             <Button type="submit">{failure ? 'Upload it again' : 'Upload it, and look through it'}</Button>
-            <span className="note">Nothing joins the list before you have seen what is in it.</span>
+            <span className="note" role="status">
+              {stopped
+                ? 'You stopped the upload. Nothing was stored.'
+                : 'Nothing joins the list before you have seen what is in it.'}
+            </span>
           </p>
         </>
       )}
