@@ -1,0 +1,45 @@
+import { renameSync, writeFileSync } from 'node:fs'
+import { join } from 'node:path'
+import { settableClock } from '#server/adapters/clock/clock.ts'
+import { DEMO_SIGN_INS, makeDemoPeople } from '#server/cli/demo/demo-people.ts'
+import { makeDemoDraws } from '#server/cli/demo/demo-draws.ts'
+import { ConfigError } from '#server/config/config-error.ts'
+import { type Config, loadConfig } from '#server/config/config.ts'
+import { servicesNotLocal } from '#server/config/local-services.ts'
+import { createServices } from '#server/services.ts'
+
+/** Makes the demo data that is missing; on a second run there is nothing to do. Refuses where any service is real. */
+export async function seedDemo(config: Config, now: () => Date = () => new Date()): Promise<void> {
+  const real = servicesNotLocal({
+    databaseUrl: config.databaseUrl,
+    objectStoreEndpoint: config.objectStore.endpoint,
+    smtpUrl: config.mail.url,
+    beaconRelays: config.beacon.relays,
+    origin: config.origin,
+  })
+  if (!config.demo || !config.local || real.length > 0 || config.beacon.networkName !== 'development') {
+    const why = real.length > 0 ? ` ${real.join(', ')} is real.` : ''
+    throw new ConfigError([`Demo data is made only where every service is a local fake.${why}`])
+  }
+  const clock = settableClock(now())
+  const services = createServices(config, { name: 'evenpenny demo data', clock })
+  try {
+    const offices = await makeDemoPeople(services)
+    await makeDemoDraws(services, clock, offices, now)
+  } finally {
+    await services.close()
+  }
+  const path = join(config.data, 'demo-sign-ins.json')
+  writeFileSync(`${path}.new`, `${JSON.stringify(DEMO_SIGN_INS, null, 2)}\n`, { mode: 0o600 })
+  renameSync(`${path}.new`, path)
+}
+
+if (process.argv[1]?.endsWith('seed-demo.ts')) {
+  seedDemo(loadConfig()).then(
+    () => console.log('The demo data is there.'),
+    (error: unknown) => {
+      console.error(error instanceof ConfigError ? error.message : error)
+      process.exitCode = 1
+    },
+  )
+}
