@@ -38,6 +38,14 @@ export function concatBytes(...parts: readonly Uint8Array[]): Uint8Array {
   return joined
 }
 
+/**
+ * Copies a short byte string into `target` at `offset`. A plain loop: for a salt or a digest, `set` takes several times
+ * as long. Requires room for all of it.
+ */
+export function put(target: Uint8Array, offset: number, source: Uint8Array): void {
+  for (let i = 0; i < source.length; i += 1) target[offset + i] = source[i] as number
+}
+
 /** Whether two byte strings are the same. Not constant in time: for public values only. */
 export function equalBytes(left: Uint8Array, right: Uint8Array): boolean {
   if (left.length !== right.length) return false

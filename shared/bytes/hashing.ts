@@ -1,4 +1,4 @@
-import { assertBytes, concatBytes } from './bytes.ts'
+import { assertBytes, concatBytes, put } from './bytes.ts'
 
 /**
  * SHA-256 (FIPS 180-4): 32 fresh bytes for any byte string. Injected everywhere, so that each place brings its
@@ -30,8 +30,8 @@ export function createHmac(sha256: Sha256): Hmac {
       inner[i] = (block[i] as number) ^ 0x36
       outer[i] = (block[i] as number) ^ 0x5c
     }
-    inner.set(message, BLOCK)
-    outer.set(sha256(inner.subarray(0, BLOCK + message.length)), BLOCK)
+    put(inner, BLOCK, message)
+    put(outer, BLOCK, sha256(inner.subarray(0, BLOCK + message.length)))
     return sha256(outer)
   }
 }

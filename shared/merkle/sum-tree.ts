@@ -1,4 +1,4 @@
-import { assertBytes, writeU64 } from '../bytes/bytes.ts'
+import { assertBytes, put, writeU64 } from '../bytes/bytes.ts'
 import type { Sha256 } from '../bytes/hashing.ts'
 import { levelSizes, type Side } from './tree-shape.ts'
 
@@ -178,11 +178,6 @@ export function streamSumTree(sha256: Sha256): SumTreeStream {
       return { size, root, total }
     },
   }
-}
-
-/** Copies a hash. A plain loop: for so few bytes `set` takes several times as long. */
-function put(target: Uint8Array, at: number, hash: Uint8Array): void {
-  for (let i = 0; i < HASH; i += 1) target[at + i] = hash[i] as number
 }
 
 function positive(count: number | undefined): number {

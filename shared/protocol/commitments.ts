@@ -1,4 +1,4 @@
-import { assertBytes, hasLoneSurrogate, utf8, writeUtf8 } from '../bytes/bytes.ts'
+import { assertBytes, hasLoneSurrogate, put, utf8, writeUtf8 } from '../bytes/bytes.ts'
 import { createHmac, type Sha256 } from '../bytes/hashing.ts'
 import { members, readShape, refuse, text, type Members, type ShapeCode } from './shape.ts'
 import type { Failure, Result } from '../bytes/result.ts'
@@ -29,7 +29,9 @@ export function referenceFromEntropy(entropy: Uint8Array): string {
   if (entropy.length < MIN_REFERENCE_LENGTH || entropy.length > MAX_REFERENCE_LENGTH) {
     throw new RangeError('a reference has 8 to 64 characters')
   }
-  return Array.from(entropy, (byte) => REFERENCE_ALPHABET[byte & 31]).join('')
+  let reference = ''
+  for (const byte of entropy) reference += REFERENCE_ALPHABET[byte & 31]
+  return reference
 }
 
 /** Orders references as leaves stand: ascending by character code (section 1). */
@@ -129,7 +131,7 @@ export function createCommitter(sha256: Sha256): Committer {
     assertBytes(salt, 'salt', 32)
     if (33 + 3 * text.length > buffer.length) buffer = new Uint8Array(33 + 6 * text.length)
     buffer[0] = tag
-    buffer.set(salt, 1)
+    put(buffer, 1, salt)
     return sha256(buffer.subarray(0, writeUtf8(buffer, 33, text)))
   }
   const committer: Committer = {
@@ -138,8 +140,8 @@ export function createCommitter(sha256: Sha256): Committer {
     entry(labelCommit, identityCommit) {
       assertBytes(labelCommit, 'labelCommit', 32)
       assertBytes(identityCommit, 'identityCommit', 32)
-      pair.set(labelCommit, 1)
-      pair.set(identityCommit, 33)
+      put(pair, 1, labelCommit)
+      put(pair, 33, identityCommit)
       return sha256(pair)
     },
     entrant(salts, label, identity) {
