@@ -2,6 +2,7 @@ import { cpus } from 'node:os'
 import { parseArgs } from 'node:util'
 import { rehearsalSection } from '#server/cli/bench/rehearsal-section.ts'
 import { type BenchSection, processorClock, wallClock } from '#server/cli/bench/report.ts'
+import { serverSection } from '#server/cli/bench/server.ts'
 
 const USAGE = `Usage: npm run bench -- [--sizes 10000,100000,1000000] [--processor-time] [SECTION …]`
 
@@ -11,7 +12,7 @@ const { values, positionals } = parseArgs({
 })
 const sizes = (values.sizes ?? '10000,100000,1000000').split(',').map(Number)
 const clock = values['processor-time'] ? processorClock : wallClock
-const sections: readonly BenchSection[] = [rehearsalSection(sizes, clock)]
+const sections: readonly BenchSection[] = [rehearsalSection(sizes, clock), serverSection]
 const wanted = sections.filter(({ name }) => positionals.length === 0 || positionals.includes(name))
 
 if (wanted.length === 0 || !sizes.every((size) => Number.isInteger(size) && size >= 100 && size <= 2_000_000)) {
