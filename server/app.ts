@@ -134,6 +134,7 @@ export function createSite(parts: SiteParts): SiteApp {
 
   return {
     app,
+    // Kept pages go out before Express: no session, no query, and no line in the log for each of a crowd.
     listener: (request: IncomingMessage, response: ServerResponse) => {
       if (!cache.serve(request, response)) app(request, response)
     },

@@ -37,7 +37,8 @@ export async function startDevelopment(root: string): Promise<Development> {
       app.use(ENTRY, (_request, response) => {
         response.type('text/javascript').send(ENTRY_SOURCE)
       })
-      app.use(vite.middlewares)
+      // Vite's files have no rules of ours: they are there in development only.
+      app.use((request, response, next) => vite.middlewares(request, response, next))
     },
     close: () => vite.close(),
   }
