@@ -1,4 +1,4 @@
-import type { RouteObject } from 'react-router'
+import { Outlet, type RouteObject } from 'react-router'
 import { accountRoutes } from '#src/features/account/routes.tsx'
 import { administratorRoutes } from '#src/features/administrator/routes.tsx'
 import { officeRoutes } from '#src/features/office/routes.tsx'
@@ -12,6 +12,7 @@ import { PublicLayout } from './public-page.tsx'
 export const routes: RouteObject[] = [
   {
     id: 'root',
+    Component: Outlet,
     ErrorBoundary: ErrorPage,
     children: [
       {

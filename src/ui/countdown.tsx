@@ -21,7 +21,7 @@ export function Countdown({ to, serverNow, what }: CountdownProps) {
       <p className="count" role="timer" aria-label={`Time to ${what}`}>
         {spanParts(left).map((part) => (
           <span key={part.unit.replace(/s$/, '')}>
-            <b>{part.value}</b> {part.unit}
+            <b>{part.value}</b> {part.unit}{' '}
           </span>
         ))}
       </p>

@@ -123,8 +123,8 @@ function CheckThese({ page }: { readonly page: PickPage }) {
     <Part title="Check these coins">
       {count > 0 ? (
         <p className="measure">
-          The flips of this pick, joined: <code className="flips-joined">{flips.join(' ')}</code>. They are the first{' '}
-          {countOf(count, 'bit')} that the draw key gives for pick {pick.pick}.
+          The flips of this pick, joined: <code className="flips-joined">{flips.join(' ')}</code>. {firstBits(count)}{' '}
+          that the draw key gives for pick {pick.pick}.
         </p>
       ) : (
         <p className="measure">No flip was used for this pick.</p>
@@ -148,4 +148,8 @@ function CheckThese({ page }: { readonly page: PickPage }) {
       </p>
     </Part>
   )
+}
+
+function firstBits(count: number): string {
+  return count === 1 ? 'It is the first bit' : `They are the first ${formatNumber(count)} bits`
 }

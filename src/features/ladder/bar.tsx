@@ -27,6 +27,23 @@ export function Bar({ coin }: { readonly coin: LadderCoin }) {
   )
 }
 
+/** The figures that do not fit into a bar, as a sentence; `everywhere` false where wide screens do show them. */
+export function unshownFigures(coin: LadderCoin): { readonly words: string; readonly everywhere: boolean } | null {
+  const shape = coinShape(coin)
+  const sides = [
+    { tickets: shape.left, percent: shape.leftPercent, name: 'left' },
+    { tickets: shape.right, percent: 100 - shape.leftPercent, name: 'right' },
+  ]
+  for (const side of sides) {
+    const figure = formatNumber(side.tickets)
+    const label = sideLabel(side.percent, figure.length)
+    if (side.tickets > 0 && label.figure !== 'everywhere') {
+      return { words: `${figure} on the ${side.name}.`, everywhere: label.figure === 'nowhere' }
+    }
+  }
+  return null
+}
+
 interface SideProps {
   readonly side: 'h' | 't'
   readonly won: boolean

@@ -8,7 +8,7 @@ export const ENTRANTS = [
   { name: 'Wren', tickets: 1 },
 ] as const
 
-const FLIPS = '100100110'
+const FLIPS = '100111'
 
 function written(flips: string): FlipStream {
   let at = 0

@@ -81,19 +81,22 @@ export interface SideLabel {
   readonly figure: 'everywhere' | 'wide' | 'nowhere'
 }
 
-const WIDE_BAR = 780
+/** The least widths of a bar in px: from 1241 px of screen, from 901 px, and on a phone of 320 px. */
+const WIDE_BAR = 779
+const MIDDLE_BAR = 597
 const PHONE_BAR = 264
 
 /** What can be written on a side of a bar without being cut off. Under 12 % a side loses its glyph. */
 export function sideLabel(percent: number, digits: number): SideLabel {
   const glyph = percent >= 12
   const wide = (percent / 100) * WIDE_BAR
+  const middle = (percent / 100) * MIDDLE_BAR
   const phone = (percent / 100) * PHONE_BAR
   const wideFits = wide >= digits * 13 + 16 + (glyph ? 42 : 0)
   const phoneFits = phone >= digits * 11.5 + 12 + (glyph ? 26 : 0)
   return {
     glyph,
-    word: glyph && wide >= digits * 13 + 120,
+    word: glyph && middle >= digits * 13 + 120,
     figure: phoneFits ? 'everywhere' : wideFits ? 'wide' : 'nowhere',
   }
 }

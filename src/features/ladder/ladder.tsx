@@ -1,6 +1,6 @@
 import type { ReactNode } from 'react'
 import { countOf, formatNumber } from '#src/ui/format-number.ts'
-import { Bar } from './bar.tsx'
+import { Bar, unshownFigures } from './bar.tsx'
 import { coinShape, fan, type LadderCoin } from './geometry.ts'
 import { isLong, Weighing } from './weighing.tsx'
 import { coinWords } from './words.ts'
@@ -46,6 +46,7 @@ function CoinRow({ coin, number, from }: CoinRowProps) {
   const words = coinWords(coin)
   const lines = fan(shape)
   const long = isLong(coin)
+  const unshown = unshownFigures(coin)
   return (
     <li className={`coin-row${from ? ` from-${from}` : ' one'}`}>
       <div className="cap">
@@ -60,6 +61,9 @@ function CoinRow({ coin, number, from }: CoinRowProps) {
           {shape.certain ? null : <Weighing coin={coin} />}
           <p className="say">
             {words.account} <b>{words.verdict}</b>
+            {unshown ? (
+              <span className={unshown.everywhere ? 'unshown' : 'unshown narrow'}> {unshown.words}</span>
+            ) : null}
           </p>
         </div>
         <Bar coin={coin} />

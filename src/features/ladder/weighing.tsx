@@ -28,25 +28,27 @@ export function Weighing({ coin }: { readonly coin: LadderCoin }) {
           0.
         </span>
       </span>
-      {rungs.map((rung, index) => {
-        // Equal with no digit left is tails too; its sign stays the equals sign.
-        const sign = rung.flip === rung.digit ? '=' : SIGN[rung.outcome]
-        return (
-          <span key={index} className={`rung${rung.outcome === 'equal' ? '' : ` decides ${rung.outcome}`}`}>
-            <Flip flip={rung.flip} />
-            <span className="sign" data-sign={sign}>
-              {sign}
+      <span className="rungs">
+        {rungs.map((rung, index) => {
+          // Equal with no digit left is tails too; its sign stays the equals sign.
+          const sign = rung.flip === rung.digit ? '=' : SIGN[rung.outcome]
+          return (
+            <span key={index} className={`rung${rung.outcome === 'equal' ? '' : ` decides ${rung.outcome}`}`}>
+              <Flip flip={rung.flip} />
+              <span className="sign" data-sign={sign}>
+                {sign}
+              </span>
+              <span className="digit">{rung.digit}</span>
             </span>
-            <span className="digit">{rung.digit}</span>
+          )
+        })}
+        {rest || goesOn ? (
+          <span className="rest">
+            <span>{rest}</span>
+            {goesOn ? '…' : ''}
           </span>
-        )
-      })}
-      {rest || goesOn ? (
-        <span className="rest">
-          <span>{rest}</span>
-          {goesOn ? '…' : ''}
-        </span>
-      ) : null}
+        ) : null}
+      </span>
     </div>
   )
 }

@@ -1,5 +1,6 @@
 import { createHash } from 'node:crypto'
 import { sha256 } from '#server/adapters/hash/sha256.ts'
+import type { Sha256 } from '#shared/bytes/hashing.ts'
 import { tossCoin } from '#shared/sampling/coin.ts'
 import { derivedFlips } from '#shared/sampling/flips.ts'
 import { CountTree } from '#shared/sampling/walk.ts'
@@ -15,6 +16,9 @@ import type {
 } from '#shared/schemas/api/public.ts'
 
 /** Invented people, places and prizes for the tests of the pages; the walks are real, tossed by the core. */
+
+/** Bytes of the realm that the test runs in: a browser’s, in some tests. */
+const hashed: Sha256 = (data) => new Uint8Array(sha256(data))
 
 export const hex = (text: string) => createHash('sha256').update(text).digest('hex')
 
@@ -105,7 +109,7 @@ export function settle(
   const picks: PickSummary[] = []
   for (const [pick, award] of awards.entries()) {
     if (tree.remaining === 0) break
-    const walk = tree.walk(derivedFlips(sha256, sha256(Buffer.from(key)), pick))
+    const walk = tree.walk(derivedFlips(hashed, hashed(new TextEncoder().encode(key)), pick))
     if (!walk) throw new Error('derived flips never run dry')
     picks.push({
       pick,

@@ -1,7 +1,7 @@
 import type { DrawPage } from '#shared/schemas/api/public.ts'
 import { fraction, oneIn } from '#src/ui/chance-words.ts'
 import { DataTable } from '#src/ui/data-table.tsx'
-import { countOf, formatMoney, formatNumber } from '#src/ui/format-number.ts'
+import { countOf, formatMoney, formatNumber, numberWord } from '#src/ui/format-number.ts'
 import { formatMoment, zoneName } from '#src/ui/format-time.ts'
 import { Figures } from '#src/ui/figures.tsx'
 import { Part } from '#src/ui/page.tsx'
@@ -37,10 +37,11 @@ export function PrizesPart({ draw }: { readonly draw: DrawPage }) {
       <ol className="prizes">
         {draw.prizes.map((prize) => (
           <li key={prize.id}>
-            <span className="figure">{prize.quantity === 1 ? '' : `${formatNumber(prize.quantity)} ×`}</span>
+            <span className="figure" aria-hidden="true" />
             <div>
               <p>
                 <b>{prize.name}</b>
+                {prize.quantity > 1 ? `, ${numberWord(prize.quantity)} of them` : ''}
               </p>
               {prize.description ? <p className="mt-0">{prize.description}</p> : null}
               {prize.donor || prize.value ? (

@@ -1,5 +1,5 @@
 import type { DrawPage, PickSummary } from '#shared/schemas/api/public.ts'
-import { MiniLadder, miniHeight } from '#src/features/ladder/mini-ladder.tsx'
+import { MiniLadder, miniHeight, miniSize } from '#src/features/ladder/mini-ladder.tsx'
 import { walkSize } from '#src/features/ladder/words.ts'
 import { fraction, oneIn } from '#src/ui/chance-words.ts'
 import { DataTable } from '#src/ui/data-table.tsx'
@@ -125,21 +125,31 @@ export function PrizesToCome({ draw }: { readonly draw: DrawPage }) {
               </p>
             </div>
             <div className="walk">
-              <svg
-                className="mini to-come"
-                viewBox={`0 0 250 ${miniHeight(depth)}`}
-                width="250"
-                height={miniHeight(depth)}
-                aria-hidden="true"
-              >
-                <rect x="0.5" y="1.5" width="249" height="6" />
-              </svg>
+              <LadderToCome depth={depth} />
               <span className="note block">No coin tossed yet</span>
             </div>
           </li>
         ))}
       </ol>
     </Part>
+  )
+}
+
+/** The rows of the longest walk that this list can take, empty: the place of the ladder that comes. */
+function LadderToCome({ depth }: { readonly depth: number }) {
+  const size = miniSize(depth)
+  return (
+    <svg
+      className="mini to-come"
+      viewBox={`0 0 ${size.width} ${miniHeight(depth)}`}
+      width={size.width}
+      height={miniHeight(depth)}
+      aria-hidden="true"
+    >
+      {Array.from({ length: depth + 1 }, (_, row) => (
+        <rect key={row} x="0.5" y={1.5 + row * (size.bar + size.fan)} width={size.width - 1} height={size.bar - 1} />
+      ))}
+    </svg>
   )
 }
 
