@@ -211,12 +211,15 @@ type CellCode = 'encoding' | 'text-refused' | 'text-too-long' | 'formula' | 'ema
 
 /** A cell's text as it will be stored: trimmed, in NFC, and fit for the record (PROTOCOL "Writing"). */
 function checkCell(column: EntrantColumn, cell: string): Result<string, Failure<CellCode>> {
-  if (cell.includes('\uFFFD')) {
+  const trimmed = cell.trim()
+  // Plain ASCII, as most cells are, is in NFC and holds nothing that the record refuses.
+  const plain = PLAIN.test(trimmed)
+  if (!plain && trimmed.includes('\uFFFD')) {
     const message = 'has a character that was lost when the file was saved. Save it again as "CSV UTF-8".'
     return fail('encoding', column, `the ${column} ${message}`)
   }
-  const text = importText(cell.trim())
-  const problem = textProblem(text)
+  const text = plain ? trimmed : importText(trimmed)
+  const problem = plain ? null : textProblem(text)
   if (problem !== null) {
     return fail('text-refused', column, `the ${column} ${TEXT_PROBLEMS[problem]}. Type it again without it.`)
   }
@@ -239,6 +242,7 @@ function checkCell(column: EntrantColumn, cell: string): Result<string, Failure<
   return ok(text)
 }
 
+const PLAIN = /^[\x20-\x7e]*$/
 const PHONE_WITH_PLUS = /^\+[0-9][0-9 ()./-]*(?:(?:x|ext\.?) ?[0-9]+)?$/i
 const EMAIL = /^[^\s@,;<>"]+@[^\s@,;<>".]+(?:\.[^\s@,;<>".]+)+$/
 
