@@ -1,4 +1,5 @@
 import type { DrawPage } from '#shared/schemas/api/public.ts'
+import { useApp } from '#src/lib/app-context.ts'
 import { eventMeaning, eventTitle } from '#src/lib/event-words.ts'
 import { ButtonLink } from '#src/ui/button.tsx'
 import { CopyButton } from '#src/ui/copy-button.tsx'
@@ -90,6 +91,7 @@ export function HistoryPart({ draw }: { readonly draw: DrawPage }) {
 }
 
 export function CautionsPart({ draw }: { readonly draw: DrawPage }) {
+  const { origin } = useApp()
   const paid = draw.ticketPrice !== null && draw.ticketPrice.minor > 0
   return (
     <Part title="Cautions">
@@ -111,7 +113,8 @@ export function CautionsPart({ draw }: { readonly draw: DrawPage }) {
         ) : null}
       </ul>
       <p className="note mt-unit-2 print-only">
-        Printed from the page as it stood on {formatMoment(draw.now, draw.timeZone)}.
+        Printed from the page as it stood on {formatMoment(draw.now, draw.timeZone)}. The page, and the check of every
+        coin: {origin}/draws/{draw.slug}
       </p>
     </Part>
   )
