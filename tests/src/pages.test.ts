@@ -1,5 +1,6 @@
 import { JSDOM } from 'jsdom'
 import { describe, expect, it } from 'vitest'
+import { escapeJson } from '#src/app/state.ts'
 import { render } from '#src/entry/server.tsx'
 import type { ApiClient } from '#shared/schemas/endpoint.ts'
 import { fixtureClient } from '#tests/support/public-pages/fixture-client.ts'
@@ -252,8 +253,13 @@ describe('addresses that lead nowhere', () => {
 })
 
 describe('the state for the browser', () => {
+  it('holds no character that means anything to an HTML or old JavaScript parser', () => {
+    const value = { words: '<!--</script ><script>&amp;\u2028\u2029' }
+    expect(escapeJson(value)).not.toMatch(/[<>&\u2028\u2029]/)
+    expect(JSON.parse(escapeJson(value))).toEqual(value)
+  })
   it('cannot be broken out of by anybody’s words', async () => {
-    const nasty = '</script><script>alert(1)</script><!-- \u2028'
+    const nasty = '</script ><script>alert(1)</script><!-- <script \u2028'
     const draw = openDraw({ slug: 'nasty', title: nasty, terms: nasty, goodCause: nasty })
     const { document, html } = await get('/draws/nasty', fixtureClient([draw]))
     expect(document.querySelectorAll('script:not([src]):not([type="application/json"])')).toHaveLength(0)
