@@ -135,6 +135,11 @@ describe('a file that is refused', () => {
     ])
   })
 
+  it('holds every later number against a long range, not only the next one', async () => {
+    const { problems } = await read(`${head}A,100,,,1-100\nB,1,,,5\nC,1,,,50\nD,1,,,101\n`)
+    expect(problems.map(({ row }) => row)).toEqual([3, 4])
+  })
+
   it('lists the problems of all rows, up to a limit, and counts the rest', async () => {
     const { problems, problemCount, totals } = await read(`name,tickets\n${'A,0\n'.repeat(250)}B,1\n`, 1000)
     expect(problems).toHaveLength(100)
