@@ -33,16 +33,11 @@ export async function prepareMail(
       if (!seal) return
       const winners = sql`exists (select from result_pick w where w.draw_id = ${input.draw}::uuid and w.leaf = p.leaf and w.prize is not null)`
       const kind = input.about === 'seal' ? sql`'seal'` : sql`case when ${winners} then 'won' else 'result' end`
-      // Nobody learns of a seal from a mail that comes after the draw.
-      const still =
-        input.about === 'seal'
-          ? sql`exists (select from draw d where d.id = ${input.draw}::uuid and d.state = 'sealed')`
-          : sql`exists (select from result r where r.draw_id = ${input.draw}::uuid)`
       await tx.db.execute(sql`
         insert into mail (key, kind, draw_id, seal_id, leaf, entrant_id, message_id, created_at, next_attempt_at)
         select k.key, k.kind, ${input.draw}::uuid, ${seal.id}, k.leaf, k.entrant_id, ${messageId}, ${now}, ${now}
         from (select ${`${input.about}:${seal.digest}:`}::text || p.leaf as key, ${kind} as kind, p.leaf, p.entrant_id
-          from sealed_leaf_person p where p.seal_id = ${seal.id} and p.email is not null and ${still}
+          from sealed_leaf_person p where p.seal_id = ${seal.id} and p.email is not null
           order by p.leaf) k
         on conflict (key) do nothing`)
     }

@@ -10,7 +10,6 @@ import { mail, mailContent } from '#server/store/schema/operation.ts'
 import { accountWords, noticeWords, resultWords, sealWords, wonWords } from './compose.ts'
 import { MailFacts } from './mail-facts.ts'
 
-const AT_ONCE = 2
 const MOST_ATTEMPTS = 12
 /** Seconds until the next attempt: 30, 60, 120, … at most an hour. */
 const waitAfter = (attempts: number): number => Math.min(3600, 15 * 2 ** attempts)
@@ -26,10 +25,8 @@ type Outgoing = Omit<OutgoingMail, 'messageId'>
  */
 export async function sendMail(services: Services, afterWrite: AfterWrite): Promise<{ readonly nextAt: Date | null }> {
   const facts = new MailFacts(services, services.db)
-  const lane = async () => {
-    while (await sendNext(services, afterWrite, facts));
-  }
-  await Promise.all(Array.from({ length: AT_ONCE }, lane))
+  // One at a time in each worker: a worker that dies leaves at most one mail in doubt. More workers send faster.
+  while (await sendNext(services, afterWrite, facts));
   const [next] = await services.db
     .select({ at: sql<Date | null>`min(${mail.nextAttemptAt})`.mapWith(mail.nextAttemptAt) })
     .from(mail)
