@@ -48,6 +48,7 @@ describe('a bar, aloud', () => {
 describe('a walk in words', () => {
   it('counts coins and flips', () => {
     expect(walkSize([])).toBe('No coin needed')
+    expect(walkSize([[0, 1, '', 'T']])).toBe('One coin, no flip')
     expect(walkSize([[1, 1, '0', 'H']])).toBe('One coin, 1 flip')
     expect(
       walkSize([

@@ -7,13 +7,20 @@ export function isLong(coin: LadderCoin): boolean {
   return Math.max(148, (fractionLength(coin) + 5) * 11.6) + coin[2].length * 40 > 400
 }
 
+/** Digits shown after the last flip: as many as the line has room for. */
+function restDigits(coin: LadderCoin): number {
+  const flips = coin[2].length
+  if (flips > 8) return 0
+  return flips <= 4 || isLong(coin) ? 4 : 7 - flips
+}
+
 const SIGN = { equal: '=', heads: '<', tails: '>' } as const
 
 /** The flips held against the binary digits of the chance, column by column, the deciding one ringed. */
 export function Weighing({ coin }: { readonly coin: LadderCoin }) {
   const [left, right] = coin
   const flips = coin[2].length
-  const { rungs, rest, goesOn } = weigh(coin, flips <= 4 || isLong(coin) ? 4 : 7 - flips)
+  const { rungs, rest, goesOn } = weigh(coin, restDigits(coin))
   // Long fractions take a line of their own on phones; many flips leave no room for digits still to come.
   const classes = ['weigh', fractionLength(coin) > 9 && 'deep', flips > 3 && 'many'].filter(Boolean).join(' ')
   return (
@@ -42,7 +49,7 @@ export function Weighing({ coin }: { readonly coin: LadderCoin }) {
             </span>
           )
         })}
-        {rest || goesOn ? (
+        {rest ? (
           <span className="rest">
             <span>{rest}</span>
             {goesOn ? '…' : ''}

@@ -56,7 +56,7 @@ export function barWords(coin: LadderCoin): string {
 export function walkSize(coins: readonly LadderCoin[]): string {
   if (coins.length === 0) return 'No coin needed'
   const flips = coins.reduce((sum, coin) => sum + coin[2].length, 0)
-  return `${capitalise(countOf(coins.length, 'coin', 'coins', true))}, ${countOf(flips, 'flip')}`
+  return `${capitalise(countOf(coins.length, 'coin', 'coins', true))}, ${flips === 0 ? 'no flip' : countOf(flips, 'flip')}`
 }
 
 /** The sides that a walk took, said one by one. */

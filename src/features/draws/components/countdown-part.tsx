@@ -39,6 +39,9 @@ export function CountdownPart({ draw }: { readonly draw: DrawPage }) {
         </p>
       </div>
       <p className="waiting-line measure">{waitingWords(draw)}</p>
+      <noscript>
+        <p className="note">The figures are those of the moment when the page was loaded. Load it again to see more.</p>
+      </noscript>
     </Part>
   )
 }
