@@ -7,7 +7,7 @@ import { sealDraw } from '#server/commands/draws/seal-draw.ts'
 import { applyImport } from '#server/commands/entrants/apply-import.ts'
 import { uploadImport } from '#server/commands/entrants/upload-import.ts'
 import type { Services } from '#server/services.ts'
-import { organisation, person } from '#server/store/schema/people.ts'
+import { membership, organisation, person } from '#server/store/schema/people.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { localFromInstant } from '#server/time/local-time.ts'
 import { drawInput, type DrawInput } from '#shared/schemas/api/office.ts'
@@ -46,6 +46,7 @@ export async function makeOffice(services: Services, options: { readonly demo?: 
     .values({ email: `promoter-${made}@choir.example`, name: 'Odile Brandt' })
     .returning()
   if (!owner || !promoter) throw new Error('not made')
+  await services.db.insert(membership).values({ organisationId: owner.id, personId: promoter.id, role: 'promoter' })
   return { organisation: slug, organisationId: owner.id, promoter: { id: promoter.id, name: promoter.name } }
 }
 
