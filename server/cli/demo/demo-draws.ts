@@ -42,7 +42,7 @@ export async function makeDemoDraws(
     garden,
     springPlants(at),
     async (id) => {
-      await garden.open(id)
+      await garden.open(id, springPlants(at).list)
       await garden.witness(id)
       clock.set(at(-32))
       await garden.close(id)
@@ -60,7 +60,7 @@ export async function makeDemoDraws(
     club,
     regatta(at),
     async (id) => {
-      await club.open(id)
+      await club.open(id, regatta(at).list)
       clock.set(at(-11))
       await club.close(id)
       clock.set(at(-10))
@@ -73,7 +73,7 @@ export async function makeDemoDraws(
     club,
     harbourLights(at),
     async (id) => {
-      await club.open(id)
+      await club.open(id, harbourLights(at).list)
       clock.set(at(-41))
       await club.close(id)
       await club.seal(id)
@@ -86,7 +86,7 @@ export async function makeDemoDraws(
     club,
     boathouseRoof(at),
     async (id) => {
-      await club.open(id)
+      await club.open(id, boathouseRoof(at).list)
       clock.set(at(-12))
       const { slug: _, title } = boathouseRoof(at)
       const reason = 'The roof was given to us, so the draw is not needed. Everybody gets their money back.'
@@ -98,7 +98,7 @@ export async function makeDemoDraws(
     garden,
     midsummer(at),
     async (id) => {
-      await garden.open(id)
+      await garden.open(id, midsummer(at).list)
       await garden.witness(id)
       clock.set(at(-4))
       await garden.close(id)
@@ -113,7 +113,7 @@ export async function makeDemoDraws(
     club,
     winterCrew(at),
     async (id) => {
-      await club.open(id)
+      await club.open(id, winterCrew(at).list)
       clock.set(at(-9))
       await club.close(id)
       clock.set(at(-8))
@@ -132,13 +132,13 @@ export async function makeDemoDraws(
     garden,
     toolShed(at),
     async (id) => {
-      await garden.open(id)
+      await garden.open(id, toolShed(at).list)
       clock.set(at(0, -2))
       await garden.close(id)
     },
     at(-20),
   )
-  await make(garden, seedLibrary(at), (id) => garden.open(id), at(-6))
+  await make(garden, seedLibrary(at), (id) => garden.open(id, seedLibrary(at).list), at(-6))
   await make(club, juniorOars(at), async () => undefined, at(-1))
 
   // Three minutes from now, to the whole minute: forms know no seconds.
@@ -147,7 +147,7 @@ export async function makeDemoDraws(
     garden,
     teatime(soon),
     async (id) => {
-      await garden.open(id)
+      await garden.open(id, teatime(soon).list)
       await garden.close(id)
       clock.set(now())
       await garden.seal(id)

@@ -83,12 +83,13 @@ export class DemoSteps {
       }),
     )
     await putPrizes(services, office.organiser, { draw: id, version: await this.version(id), prizes })
-    if (plan.list.entrants > 0) await this.import(id, plan.list)
     return id
   }
 
-  async open(id: string): Promise<void> {
+  /** Opens for entries, and brings in the list that an organiser has. */
+  async open(id: string, list: DemoList): Promise<void> {
     await openDraw(this.services, this.office.promoter, { draw: id, version: await this.version(id) })
+    await this.import(id, list)
   }
 
   async close(id: string): Promise<void> {
