@@ -33,7 +33,9 @@ export function problemsOfSealing(facts: DrawFacts, now: Date): string[] {
   const problems: string[] = []
   if (facts.state === 'draft') problems.push('Open the draw for entries first.')
   if (facts.state === 'open') problems.push('Close the list first: a seal fixes a list that nobody adds to any more.')
-  if (facts.entrants === 0) problems.push('The list is empty. Add an entrant or import a file, then seal it.')
+  if (facts.entrants === 0 && facts.state !== 'draft') {
+    problems.push('The list is empty. Add an entrant or import a file, then seal it.')
+  }
   problems.push(...commonProblems(facts))
   const earliest = MIN_SEAL_LEAD + sealingSeconds(facts.entrants)
   const left = (facts.drawAt.getTime() - now.getTime()) / 1000

@@ -104,9 +104,9 @@ export interface DrawOptions extends Partial<DrawInput> {
   readonly entrants?: readonly string[]
 }
 
-/** A draft with one prize of two items and the entrants, imported. */
+/** A draft with one prize of two items. */
 export async function makeDraft(services: Services, office: Office, options: DrawOptions = {}): Promise<string> {
-  const { entrants = ENTRANTS, ...changes } = options
+  const { entrants: _, ...changes } = options
   const { id } = await createDraw(services, office.promoter, {
     organisation: office.organisation,
     draw: drawValues(services, changes),
@@ -116,6 +116,14 @@ export async function makeDraft(services: Services, office: Office, options: Dra
     version: 1,
     prizes: [{ name: 'Hamper', quantity: 2, donor: null, description: null, value: null }],
   })
+  return id
+}
+
+/** An open draw with the entrants, imported. */
+export async function makeOpen(services: Services, office: Office, options: DrawOptions = {}): Promise<string> {
+  const id = await makeDraft(services, office, options)
+  await openDraw(services, office.promoter, { draw: id, version: await versionOf(services, id) })
+  const entrants = options.entrants ?? ENTRANTS
   if (entrants.length > 0) {
     const imported = await importCsv(services, office, id, csv(entrants))
     await applyImport(services, office.promoter, { draw: id, import: imported })
@@ -124,8 +132,7 @@ export async function makeDraft(services: Services, office: Office, options: Dra
 }
 
 export async function makeClosed(services: Services, office: Office, options: DrawOptions = {}): Promise<string> {
-  const id = await makeDraft(services, office, options)
-  await openDraw(services, office.promoter, { draw: id, version: await versionOf(services, id) })
+  const id = await makeOpen(services, office, options)
   await closeDraw(services, office.promoter, { draw: id, version: await versionOf(services, id) })
   return id
 }

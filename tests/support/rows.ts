@@ -29,7 +29,7 @@ export async function transaction<T>(
   }
 }
 
-/** A draft with two entrants (3 and 4 tickets) and one prize, in an organisation of its own. */
+/** A draft with one prize, in an organisation of its own. */
 export async function draftRow(
   pool: Pool,
   options: { readonly demo?: boolean; readonly drawAt?: string } = {},
@@ -55,23 +55,32 @@ export async function draftRow(
   await pool.query(`insert into prize (draw_id, code, position, name, quantity) values ($1, 'p1', 1, 'Hamper', 1)`, [
     drawId,
   ])
+  return { organisationId, drawId }
+}
+
+/** An open draw with two entrants, of 3 and 4 tickets. */
+export async function openRow(
+  pool: Pool,
+  options: { readonly demo?: boolean; readonly drawAt?: string } = {},
+): Promise<Row> {
+  const row = await draftRow(pool, options)
+  await pool.query(`update draw set state = 'open', opened_at = now() where id = $1`, [row.drawId])
   await pool.query(
     `with added as (
        insert into entrant (draw_id, code, tickets, source, added_at)
        values ($1, 'AAAABBBB', 3, 'by-hand', now()), ($1, 'CCCCDDDD', 4, 'by-hand', now()) returning id, draw_id, code)
      insert into entrant_person (entrant_id, draw_id, name, label)
      select id, draw_id, 'Person ' || code, 'P. ' || code from added`,
-    [drawId],
+    [row.drawId],
   )
-  return { organisationId, drawId }
+  return row
 }
 
 export async function closedRow(
   pool: Pool,
   options: { readonly demo?: boolean; readonly drawAt?: string } = {},
 ): Promise<Row> {
-  const row = await draftRow(pool, options)
-  await pool.query(`update draw set state = 'open', opened_at = now() where id = $1`, [row.drawId])
+  const row = await openRow(pool, options)
   await pool.query(`update draw set state = 'closed', closed_at = now() where id = $1`, [row.drawId])
   return row
 }

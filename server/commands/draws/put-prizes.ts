@@ -20,7 +20,7 @@ export async function putPrizes(
 ): Promise<void> {
   await inTransaction(services, async (tx) => {
     const { row } = await lockDraw(tx, input)
-    requireState(row, ['draft', 'open', 'closed'], 'change its prizes')
+    requireState(row, ['draft'], 'change its prizes')
     const before = await tx.db.select().from(prize).where(eq(prize.drawId, row.id))
     const known = new Set(before.map(({ code }) => code))
     checkPrizes(input.prizes, known, row.reserves)

@@ -17,7 +17,7 @@ export async function addEntrant(
 ): Promise<{ readonly id: number }> {
   return inTransaction(services, async (tx) => {
     const { row } = await lockDraw(tx, input)
-    requireState(row, ['draft', 'open'], 'add entrants')
+    requireState(row, ['open'], 'add entrants')
     if (row.entrantCount >= MAX_ENTRANTS) throw refused('A draw holds at most 2,000,000 entrants.')
     checkTotal(row.ticketCount, input.entrant.tickets)
     const { ranges, ...person } = entrantValues(input.entrant)

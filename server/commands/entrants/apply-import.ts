@@ -21,7 +21,7 @@ export async function applyImport(
     const { row: its } = await lockDraw(tx, { draw: input.draw })
     const found = await lockImport(tx, input)
     if (found.state === 'applied') return
-    requireState(its, ['draft', 'open'], 'import entrants')
+    requireState(its, ['open'], 'import entrants')
     if (found.state !== 'ready')
       throw refused(`This import is ${found.state}: only one without errors can be brought in.`)
     if (its.entrantCount + found.entrants > MAX_ENTRANTS) throw refused('A draw holds at most 2,000,000 entrants.')

@@ -15,7 +15,7 @@ export async function removeEntrant(
 ): Promise<void> {
   await inTransaction(services, async (tx) => {
     const { row: its } = await lockDraw(tx, { draw: input.draw })
-    requireState(its, ['draft', 'open'], 'take entrants out')
+    requireState(its, ['open'], 'take entrants out')
     const { row, person } = await lockEntrant(tx, input)
     await tx.db.delete(entrant).where(eq(entrant.id, row.id))
     const { name, label, email, phone, numbers } = person

@@ -17,7 +17,7 @@ export async function updateEntrant(
 ): Promise<void> {
   await inTransaction(services, async (tx) => {
     const { row: its } = await lockDraw(tx, { draw: input.draw })
-    requireState(its, ['draft', 'open'], 'change entrants')
+    requireState(its, ['open'], 'change entrants')
     const { row, person: before } = await lockEntrant(tx, input)
     if (row.version !== input.version) {
       throw new CommandError(

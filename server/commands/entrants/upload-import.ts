@@ -39,7 +39,7 @@ export async function uploadImport(
   const now = services.clock.now()
   const id = await inTransaction(services, async (tx) => {
     const { row } = await lockDraw(tx, { draw: input.draw })
-    requireState(row, ['draft', 'open'], 'import entrants')
+    requireState(row, ['open'], 'import entrants')
     const [made] = await tx.db
       .insert(entrantImport)
       .values({

@@ -23,10 +23,10 @@ const OVERDUE_AFTER = 60_000
 
 const columns = {
   organisation,
-  people: sql<number>`(select count(*)::int from membership m where m.organisation_id = ${organisation.id})`,
+  people: sql<number>`(select count(*)::int from membership m where m.organisation_id = organisation.id)`,
   draws: sql<
     Record<string, number>
-  >`coalesce((select jsonb_object_agg(s.state, s.n) from (select state, count(*) as n from draw d where d.organisation_id = ${organisation.id} group by state) s), '{}')`,
+  >`coalesce((select jsonb_object_agg(s.state, s.n) from (select state, count(*) as n from draw d where d.organisation_id = organisation.id group by state) s), '{}')`,
 }
 
 function present(row: {

@@ -44,9 +44,7 @@ export async function listOfficeDraws(
   const rows = await db
     .select({
       draw,
-      quantities: sql<
-        number[]
-      >`coalesce((select array_agg(p.quantity) from prize p where p.draw_id = ${draw.id}), '{}')`,
+      quantities: sql<number[]>`coalesce((select array_agg(p.quantity) from prize p where p.draw_id = draw.id), '{}')`,
     })
     .from(draw)
     .where(and(eq(draw.organisationId, owner.id), watched))
@@ -188,7 +186,7 @@ function mayOf(
   const unsealed = state === 'draft' || state === 'open' || state === 'closed'
   return {
     edit: rights.edit && state === 'draft',
-    changeEntrants: rights.edit && (state === 'draft' || state === 'open'),
+    changeEntrants: rights.edit && state === 'open',
     open: rights.run && state === 'draft' && problems.open.length === 0,
     close: rights.run && state === 'open',
     reopen: rights.run && state === 'closed',

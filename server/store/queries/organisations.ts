@@ -29,7 +29,7 @@ export async function listOrganisations(
         registration: organisation.registration,
         demo: organisation.demo,
         suspended: sql<boolean>`${organisation.state} = 'suspended'`,
-        draws: sql<number>`(select count(*)::int from draw d where d.organisation_id = ${organisation.id} and d.opened_at is not null)`,
+        draws: sql<number>`(select count(*)::int from draw d where d.organisation_id = organisation.id and d.opened_at is not null)`,
       })
       .from(organisation)
       .where(where)

@@ -17,6 +17,7 @@ import { jobHandlers } from '#server/jobs/handlers.ts'
 import { readSealedLeaves } from '#server/store/queries/sealed-leaves.ts'
 import { sealInForce, sealOf, sealsOf } from '#server/store/queries/seals.ts'
 import { draw, prize } from '#server/store/schema/draw.ts'
+import { type DrawFacts, problemsOfSealing } from '#server/store/draw-problems.ts'
 import { auditDetail, auditEvent, logEvent, logNote } from '#server/store/schema/record.ts'
 import { sealedLeafPerson, sealSecret } from '#server/store/schema/seal.ts'
 import { localFromInstant } from '#server/time/local-time.ts'
@@ -31,6 +32,7 @@ import {
   drawValues,
   makeClosed,
   makeDraft,
+  makeOpen,
   makeOffice,
   makeSealed,
   type Office,
@@ -272,14 +274,25 @@ describe('sealing', () => {
     const id = await makeClosed(site.services, office, { entrants: [] })
     expect((await refusal(seal(id))).message).toBe('The list is empty. Add an entrant or import a file, then seal it.')
   })
-  it('is refused without prizes', async () => {
-    const id = await makeClosed(site.services, office)
-    await putPrizes(site.services, office.promoter, {
-      draw: id,
-      version: await versionOf(site.services, id),
+  it('is refused without prizes, which nobody can take away once the draw is open', async () => {
+    const facts: DrawFacts = {
+      state: 'closed',
+      organisationState: 'approved',
+      closesAt: clock.now(),
+      drawAt: inHours(1),
+      entrants: 4,
+      tickets: 11,
       prizes: [],
-    })
-    expect((await refusal(seal(id))).message).toBe('There are no prizes. Add at least one.')
+      reserves: 1,
+    }
+    expect(problemsOfSealing(facts, clock.now())).toEqual(['There are no prizes. Add at least one.'])
+    expect(problemsOfSealing({ ...facts, prizes: [{ quantity: 2 }] }, clock.now())).toEqual([])
+    for (const make of [makeOpen, makeClosed]) {
+      const id = await make(site.services, office)
+      const version = await versionOf(site.services, id)
+      const taken = putPrizes(site.services, office.promoter, { draw: id, version, prizes: [] })
+      expect((await refusal(taken)).message).toMatch(/^This draw is (open|closed): you cannot change its prizes now\.$/)
+    }
   })
   it('is refused for a draw time that is past or too near for the beacon', async () => {
     const id = await makeClosed(site.services, office)

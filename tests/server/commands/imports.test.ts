@@ -13,7 +13,7 @@ import { getImport } from '#server/store/queries/imports.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { entrantImport, entrantPerson, importRow } from '#server/store/schema/entrant.ts'
 import { auditDetail, auditEvent } from '#server/store/schema/record.ts'
-import { csv, importCsv, makeClosed, makeDraft, makeOffice, type Office } from '#tests/support/draws.ts'
+import { csv, importCsv, makeClosed, makeDraft, makeOffice, makeOpen, type Office } from '#tests/support/draws.ts'
 import { startTestSite, type TestSite } from '#tests/support/site.ts'
 
 let site: TestSite
@@ -40,14 +40,14 @@ const counts = async (id: string) =>
       .from(draw)
       .where(eq(draw.id, id))
   )[0]
-const draft = () => makeDraft(site.services, office, { entrants: [] })
+const empty = () => makeOpen(site.services, office, { entrants: [] })
 const staged = async (id: string) => site.services.db.$count(importRow, eq(importRow.importId, id))
 const list = (id: string, more: Partial<Parameters<typeof listEntrants>[1]> = {}) =>
   listEntrants(site.services.db, { draw: id, q: '', sort: 'added', direction: 'up', page: 1, ...more })
 
 describe('an import', () => {
   it('is looked through before anything joins the list, and brought in once', async () => {
-    const id = await draft()
+    const id = await empty()
     const text = csv(
       ['Ada Quill,5,ada@people.example,1-5', 'Bram "Bo" Osei,1,,', 'Ṡean\\tab,2,,"A7, A9"'].map((row) =>
         row.replace('Bram "Bo" Osei', '"Bram ""Bo"" Osei"'),
@@ -88,7 +88,7 @@ describe('an import', () => {
     )
   })
   it('with a fault keeps no row and cannot be brought in', async () => {
-    const id = await draft()
+    const id = await empty()
     const made = await importCsv(
       site.services,
       office,
@@ -108,7 +108,7 @@ describe('an import', () => {
     expect(await counts(id)).toEqual({ entrants: 0, tickets: 0 })
   })
   it('brings in nothing where a ticket number is held already', async () => {
-    const id = await makeDraft(site.services, office)
+    const id = await makeOpen(site.services, office)
     const made = await importCsv(site.services, office, id, csv(['Eve Lund,2,,40-41', 'Finn Roe,3,,5-7']))
     expect((await refusal(applyImport(site.services, office.promoter, { draw: id, import: made }))).message).toContain(
       'nothing was brought in',
@@ -119,7 +119,7 @@ describe('an import', () => {
     expect(await staged(made)).toBe(0)
   })
   it('that breaks off half-way leaves nothing but a note', async () => {
-    const id = await draft()
+    const id = await empty()
     const abort = new AbortController()
     async function* half(): AsyncGenerator<Uint8Array> {
       yield Buffer.from(csv(Array.from({ length: 9000 }, (_, index) => `Person ${index},1,,`)))
@@ -142,7 +142,7 @@ describe('an import', () => {
     expect(await staged(row?.id ?? '')).toBe(0)
   })
   it('is refused beyond 200 MB, without being kept in memory', async () => {
-    const id = await draft()
+    const id = await empty()
     const line = Buffer.from(`${'Ada Quill,1,,'.padEnd(60_000, ' ')}\n`)
     async function* endless(): AsyncGenerator<Uint8Array> {
       yield Buffer.from('name,tickets,email,numbers\n')
@@ -161,8 +161,11 @@ describe('an import', () => {
     expect(row?.state).toBe('failed')
     expect(await staged(row?.id ?? '')).toBe(0)
   }, 120_000)
-  it('is refused for a closed list', async () => {
-    const id = await makeClosed(site.services, office)
+  it.each([
+    ['draft', makeDraft],
+    ['closed', makeClosed],
+  ] as const)('is refused while the draw is %s', async (state, make) => {
+    const id = await make(site.services, office)
     const stream = Readable.from([Buffer.from(csv(['Ada Quill,1,,']))])
     const upload = uploadImport(site.services, office.promoter, {
       draw: id,
@@ -170,14 +173,19 @@ describe('an import', () => {
       bytesTotal: 1,
       stream,
     })
-    expect((await refusal(upload)).message).toBe('This draw is closed: you cannot import entrants now.')
+    expect((await refusal(upload)).message).toBe(`This draw is ${state}: you cannot import entrants now.`)
+    const added = addEntrant(site.services, office.promoter, {
+      draw: id,
+      entrant: { name: 'Nell Okoro', tickets: 3, label: null, email: null, phone: null, numbers: null },
+    })
+    expect((await refusal(added)).message).toBe(`This draw is ${state}: you cannot add entrants now.`)
   })
 })
 
 describe('entrants by hand', () => {
   const given = { name: 'Nell Okoro', tickets: 3, label: null, email: null, phone: null, numbers: '90-92' }
   it('are added, changed from the version that was read, and taken out with a reason', async () => {
-    const id = await makeDraft(site.services, office)
+    const id = await makeOpen(site.services, office)
     const { id: entrant } = await addEntrant(site.services, office.promoter, { draw: id, entrant: given })
     expect(await counts(id)).toEqual({ entrants: 5, tickets: 14 })
     const change = () =>
@@ -197,13 +205,13 @@ describe('entrants by hand', () => {
     await addEntrant(site.services, office.promoter, { draw: id, entrant: { ...given, name: 'Otis Pratt' } })
   })
   it('cannot hold a number that somebody else holds', async () => {
-    const id = await makeDraft(site.services, office)
+    const id = await makeOpen(site.services, office)
     const added = addEntrant(site.services, office.promoter, { draw: id, entrant: { ...given, numbers: '3' } })
     expect((await refusal(added)).fields).toMatchObject([{ field: 'numbers' }])
     expect(await counts(id)).toEqual({ entrants: 4, tickets: 11 })
   })
   it('leave their names in the side table of the audit trail only', async () => {
-    const id = await makeDraft(site.services, office)
+    const id = await makeOpen(site.services, office)
     await addEntrant(site.services, office.promoter, { draw: id, entrant: given })
     const events = await site.services.db.select().from(auditEvent).where(eq(auditEvent.drawId, id))
     expect(JSON.stringify(events)).not.toMatch(/Nell|Okoro|Odile/)
@@ -218,7 +226,7 @@ describe('the table of entrants', () => {
       { length: 120 },
       (_, index) => `Person ${String(index).padStart(3, '0')},${120 - index},p${index}@people.example,`,
     )
-    const id = await makeDraft(site.services, office, { entrants: [...rows, '100% Ölkanne,7,oil_can@people.example,'] })
+    const id = await makeOpen(site.services, office, { entrants: [...rows, '100% Ölkanne,7,oil_can@people.example,'] })
     expect(await list(id)).toMatchObject({ total: 121, tickets: 7267, page: 1, pageSize: 50 })
     expect((await list(id, { page: 3 })).items).toHaveLength(21)
     expect((await list(id, { sort: 'tickets', direction: 'down' })).items[0]).toMatchObject({

@@ -1,7 +1,7 @@
 import { createServer, type Server } from 'node:http'
 import { connect, type AddressInfo } from 'node:net'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
-import { draftRow } from '#tests/support/rows.ts'
+import { openRow } from '#tests/support/rows.ts'
 import { startWebSite, type WebSite } from '#tests/support/web-site.ts'
 
 let site: WebSite
@@ -12,7 +12,7 @@ let cookie: string
 
 beforeAll(async () => {
   site = await startWebSite()
-  const row = await draftRow(site.database.pool)
+  const row = await openRow(site.database.pool)
   draw = row.drawId
   const organiser = await site.person()
   await site.member(row.organisationId, organiser.id, 'organiser')

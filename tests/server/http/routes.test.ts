@@ -4,7 +4,7 @@ import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { routesOf } from '#server/http/routes.ts'
 import type { Role } from '#shared/schemas/values.ts'
 import { startWebSite, type WebSite } from '#tests/support/web-site.ts'
-import { draftRow } from '#tests/support/rows.ts'
+import { openRow } from '#tests/support/rows.ts'
 
 /**
  * Who gets in where: every route of the running application, for every role. The list of routes is read from the
@@ -198,8 +198,7 @@ afterAll(() => site.close())
 /** An open draw with a faulty import, in an organisation of its own. */
 async function makePlace(state: 'approved' | 'suspended'): Promise<Place> {
   const { pool } = site.database
-  const row = await draftRow(pool)
-  await pool.query(`update draw set state = 'open', opened_at = now() where id = $1`, [row.drawId])
+  const row = await openRow(pool)
   const { rows } = await pool.query<{ slug: string; organisation: string }>(
     'select d.slug, o.slug as organisation from draw d join organisation o on o.id = d.organisation_id where d.id = $1',
     [row.drawId],

@@ -2,14 +2,13 @@ import { eq } from 'drizzle-orm'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { settableClock } from '#server/adapters/clock/clock.ts'
 import { retryJob } from '#server/commands/jobs/retry-job.ts'
-import { openDraw } from '#server/commands/draws/open-draw.ts'
 import { nameWitness } from '#server/commands/witnesses/name-witness.ts'
 import { removeWitness } from '#server/commands/witnesses/remove-witness.ts'
 import { stateAsWitness } from '#server/commands/witnesses/state-as-witness.ts'
 import { goOn } from '#server/jobs/crash-points.ts'
 import { lookAround, heartbeat } from '#server/jobs/look-around.ts'
 import { settleDraw } from '#server/jobs/settle-draw.ts'
-import { getSiteState } from '#server/store/queries/administrator.ts'
+import { findOrganisationRow, getSiteState, listAllOrganisations } from '#server/store/queries/administrator.ts'
 import { getAudit } from '#server/store/queries/audit.ts'
 import { getHome, searchDraws } from '#server/store/queries/draw-cards.ts'
 import { getDraw, getPick } from '#server/store/queries/draw-page.ts'
@@ -21,7 +20,7 @@ import { membership, organisation, person } from '#server/store/schema/people.ts
 import { getSiteState as siteStateEndpoint } from '#shared/schemas/api/administrator.ts'
 import { getOfficeDraw as officeDrawEndpoint } from '#shared/schemas/api/office.ts'
 import { getDraw as drawEndpoint, getPick as pickEndpoint } from '#shared/schemas/api/public.ts'
-import { makeClosed, makeDraft, makeOffice, makeSealed, type Office, versionOf } from '#tests/support/draws.ts'
+import { makeClosed, makeDraft, makeOffice, makeOpen, makeSealed, type Office } from '#tests/support/draws.ts'
 import { startTestSite, type TestSite } from '#tests/support/site.ts'
 
 const clock = settableClock(new Date('2026-05-01T09:00:00Z'))
@@ -54,8 +53,7 @@ beforeAll(async () => {
   clock.advance(3600_000)
   await settleDraw(services, goOn, { draw: ids.drawn })
   ids.draft = await makeDraft(services, office, { title: 'Draft draw' })
-  ids.open = await makeDraft(services, office, { title: 'Open draw' })
-  await openDraw(services, office.promoter, { draw: ids.open, version: await versionOf(services, ids.open) })
+  ids.open = await makeOpen(services, office, { title: 'Open draw' })
   ids.closed = await makeClosed(services, office, { title: 'Closed draw' })
   ids.sealed = await makeSealed(services, office, { title: 'Sealed draw', goodCause: 'Hymn_books' })
 }, 60_000)
@@ -131,6 +129,10 @@ describe('public reads', () => {
     expect((await listOrganisations(site.services.db, { q: '', page: 1 })).items.map(({ slug }) => slug)).not.toContain(
       other.organisation,
     )
+    // Four of the five are public.
+    expect((await listOrganisations(site.services.db, { q: '', page: 1 })).items).toMatchObject([
+      { slug: office.organisation, draws: 4 },
+    ])
     await set('suspended')
     expect(await getOrganisation(site.services.db, other.organisation)).toMatchObject({ suspended: true })
   })
@@ -142,7 +144,7 @@ describe('office reads', () => {
       const view = officeDrawEndpoint.response.parse(await getOfficeDraw(site.services, { draw: id, rights }))
       return Object.entries(view.may).flatMap(([name, allowed]) => (allowed ? [name] : []))
     }
-    expect(await may(ids.draft)).toEqual(['edit', 'changeEntrants', 'open', 'cancel'])
+    expect(await may(ids.draft)).toEqual(['edit', 'open', 'cancel'])
     expect(await may(ids.open)).toEqual(['changeEntrants', 'close', 'postpone', 'cancel'])
     expect(await may(ids.closed)).toEqual(['reopen', 'seal', 'postpone', 'cancel'])
     expect(await may(ids.sealed)).toEqual(['replaceSeal', 'postpone', 'cancel', 'state'])
@@ -157,6 +159,11 @@ describe('office reads', () => {
     const all = await listOfficeDraws(site.services, { organisation: office.organisation })
     expect(all?.draws.map(({ title, waiting }) => [title, waiting])).toContainEqual(['Closed draw', 'Seal the list.'])
     expect(all?.draws).toHaveLength(5)
+    expect(all?.draws.map(({ prizes }) => prizes)).toEqual([2, 2, 2, 2, 2])
+    expect(Object.fromEntries(all?.draws.map(({ state, waiting }) => [state, waiting]) ?? [])).toMatchObject({
+      draft: 'Open it for entries when you are ready.',
+      open: null,
+    })
     const watched = await listOfficeDraws(site.services, { organisation: office.organisation, witnessedBy: watcher.id })
     expect(watched?.draws.map(({ title }) => title)).toEqual(['Drawn draw'])
   })
@@ -204,6 +211,15 @@ describe('office reads', () => {
     expect(items.map(({ action }) => action).slice(0, 2)).toEqual(['draw.seal', 'draw.close'])
     expect(await getAudit(site.services.db, { q: 'no such words', page: 1 })).toMatchObject({ total: 0 })
     expect((await getAudit(site.services.db, { q: '', page: 1, organisation: 'elsewhere' })).total).toBe(0)
+  })
+})
+
+describe('what an administrator sees of an organisation', () => {
+  it('is counts and states', async () => {
+    const counts = { people: 2, draws: { draft: 1, open: 1, closed: 1, sealed: 1, drawn: 1 } }
+    expect(await findOrganisationRow(site.services.db, office.organisation)).toMatchObject(counts)
+    const { items } = await listAllOrganisations(site.services.db, { q: office.organisation, state: 'all', page: 1 })
+    expect(items).toMatchObject([counts])
   })
 })
 

@@ -1,6 +1,15 @@
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { createTestDatabase, type TestDatabase } from '#tests/support/database.ts'
-import { closedRow, draftRow, drawnRow, insertResult, insertSeal, sealedRow, transaction } from '#tests/support/rows.ts'
+import {
+  closedRow,
+  draftRow,
+  drawnRow,
+  insertResult,
+  insertSeal,
+  openRow,
+  sealedRow,
+  transaction,
+} from '#tests/support/rows.ts'
 
 let database: TestDatabase
 const query = (text: string, values: unknown[] = []) => database.pool.query(text, values)
@@ -36,11 +45,7 @@ const LEGAL = new Set([
 describe("a draw's life", () => {
   const inState: Record<(typeof STATES)[number], () => Promise<string>> = {
     draft: async () => (await draftRow(database.pool)).drawId,
-    async open() {
-      const { drawId } = await draftRow(database.pool)
-      await query(`update draw set state = 'open', opened_at = now() where id = $1`, [drawId])
-      return drawId
-    },
+    open: async () => (await openRow(database.pool)).drawId,
     closed: async () => (await closedRow(database.pool)).drawId,
     sealed: async () => (await sealedRow(database.pool)).drawId,
     drawn: async () => (await drawnRow(database.pool)).drawId,
@@ -106,15 +111,34 @@ describe("a draw's life", () => {
 })
 
 describe('the list of entrants', () => {
-  it('is counted by the database, and opens and closes with the draw', async () => {
+  it('takes nobody before the draw is published, and the prizes are fixed from then on', async () => {
     const { drawId } = await draftRow(database.pool)
+    const add = `insert into entrant (draw_id, code, tickets, source, added_at) values ($1, 'EEEEFFFF', 1, 'by-hand', now())`
+    const more = `insert into prize (draw_id, code, position, name, quantity) values ($1, 'p2', 2, 'More', 1)`
+    expect((await refusal(query(add, [drawId]))).message).toBe(
+      'The entrants of a draw that is draft cannot be changed.',
+    )
+    await query(more, [drawId])
+    await query(`update draw set state = 'open', opened_at = now() where id = $1`, [drawId])
+    await query(add, [drawId])
+    for (const change of [
+      more,
+      'delete from prize where draw_id = $1',
+      'update prize set quantity = 2 where draw_id = $1',
+    ]) {
+      expect((await refusal(query(change, [drawId]))).message).toBe(
+        'The prizes of a draw that is open cannot be changed.',
+      )
+    }
+  })
+  it('is counted by the database, and opens and closes with the draw', async () => {
+    const { drawId } = await openRow(database.pool)
     const counts = async () =>
       (await query('select entrant_count, ticket_count from draw where id = $1', [drawId])).rows[0]
     expect(await counts()).toEqual({ entrant_count: 2, ticket_count: '7' })
     await query(`update entrant set tickets = 10 where draw_id = $1 and code = 'AAAABBBB'`, [drawId])
     await query(`delete from entrant where draw_id = $1 and code = 'CCCCDDDD'`, [drawId])
     expect(await counts()).toEqual({ entrant_count: 1, ticket_count: '10' })
-    await query(`update draw set state = 'open', opened_at = now() where id = $1`, [drawId])
     await query(`update draw set state = 'closed', closed_at = now() where id = $1`, [drawId])
     const sentence = 'The entrants of a draw that is closed cannot be changed.'
     for (const change of [
@@ -130,7 +154,7 @@ describe('the list of entrants', () => {
     expect(await counts()).toEqual({ entrant_count: 1, ticket_count: '10' })
   })
   it.each([0, -1, 4_294_967_296])('refuses %i tickets', async (tickets) => {
-    const { drawId } = await draftRow(database.pool)
+    const { drawId } = await openRow(database.pool)
     const added = query(
       `insert into entrant (draw_id, code, tickets, source, added_at) values ($1, 'EEEEFFFF', $2, 'by-hand', now())`,
       [drawId, tickets],
@@ -138,7 +162,7 @@ describe('the list of entrants', () => {
     expect(await refusal(added)).toMatchObject({ code: '23514', constraint: 'entrant_tickets' })
   })
   it('lets 4,294,967,295 tickets in, and refuses a code twice', async () => {
-    const { drawId } = await draftRow(database.pool)
+    const { drawId } = await openRow(database.pool)
     const add = (code: string) =>
       query(
         `insert into entrant (draw_id, code, tickets, source, added_at) values ($1, $2, 4294967295, 'by-hand', now())`,
@@ -148,8 +172,8 @@ describe('the list of entrants', () => {
     expect(await refusal(add('EEEEFFFF'))).toMatchObject({ code: '23505', constraint: 'entrant_code' })
   })
   it('lets nobody hold a ticket number twice in a draw, but in another series or another draw', async () => {
-    const { drawId } = await draftRow(database.pool)
-    const other = await draftRow(database.pool)
+    const { drawId } = await openRow(database.pool)
+    const other = await openRow(database.pool)
     const hold = (draw: string, code: string, series: string, range: string) =>
       query(
         `insert into entrant_numbers (draw_id, entrant_id, series, range)

@@ -73,6 +73,9 @@ describe('whyFixed', () => {
     expect(fixed({ state: 'open', organisation: { ...organisation, state: 'suspended' } })).toMatch(/suspended/)
     expect(fixed({ state: 'open' })).toMatch(/organisers and promoters/)
   })
+  it('sends an organiser with a draft to the opening, which comes before the first ticket', () => {
+    expect(fixed({ state: 'draft' })).toMatch(/once the promoter has opened the draw.*before the first ticket/)
+  })
 })
 
 describe('the page of the entrants', () => {

@@ -86,7 +86,7 @@ export function officeDraw(changes: Partial<OfficeDraw> = {}): OfficeDraw {
     statements: [],
     may: {
       edit: state === 'draft',
-      changeEntrants: state === 'draft' || state === 'open',
+      changeEntrants: state === 'open',
       open: state === 'draft',
       close: state === 'open',
       reopen: state === 'closed',

@@ -98,6 +98,7 @@ function List() {
       <ListActions
         mayChange={mayChange}
         why={whyFixed(draw)}
+        opening={draw.may.open ? drawPath(organisation, draw.id, 'terms') : null}
         importPath={drawPath(organisation, draw.id, 'import')}
         adding={open?.kind === 'add'}
         onAdd={() => show({ kind: 'add' })}
@@ -210,13 +211,26 @@ function noteOf(list: Found, q: string): string {
 interface ListActionsProps {
   readonly mayChange: boolean
   readonly why: string | null
+  /** Where this person opens the draw, so that entrants can come in; null where they cannot. */
+  readonly opening: string | null
   readonly importPath: string
   readonly adding: boolean
   readonly onAdd: () => void
 }
 
-function ListActions({ mayChange, why, importPath, adding, onAdd }: ListActionsProps) {
-  if (!mayChange) return <p className="measure waits mt-0">{why}</p>
+function ListActions({ mayChange, why, opening, importPath, adding, onAdd }: ListActionsProps) {
+  if (!mayChange) {
+    return (
+      <>
+        <p className="measure waits mt-0">{why}</p>
+        {opening === null ? null : (
+          <p className="buttons">
+            <ButtonLink to={opening}>Go to the terms, to open the draw</ButtonLink>
+          </p>
+        )}
+      </>
+    )
+  }
   return (
     <p className="buttons">
       <ButtonLink to={importPath}>Bring in a sheet</ButtonLink>

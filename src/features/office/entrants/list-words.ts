@@ -17,8 +17,10 @@ export function whyFixed(draw: Pick<OfficeDraw, 'state' | 'may' | 'organisation'
       return 'The draw failed. Its list stays as it was sealed.'
     case 'draft':
     case 'open':
-      return draw.organisation.state === 'suspended'
-        ? 'Your organisation is suspended: nothing can be changed. Write to the administrator of the site.'
+      if (draw.organisation.state === 'suspended')
+        return 'Your organisation is suspended: nothing can be changed. Write to the administrator of the site.'
+      return draw.state === 'draft'
+        ? 'Entrants come in once the promoter has opened the draw: its terms and prizes are published before the first ticket.'
         : 'You can read the list. Its organisers and promoters change it.'
   }
 }
