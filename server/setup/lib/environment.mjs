@@ -26,6 +26,9 @@ export function ownServicesProblem(env) {
   )
 }
 
+/** The AWS SDK prints at every start that its versions from 2027 on want a newer Node.js; ours is pinned, and runs on 20. */
+const QUIET_SDK = { AWS_SDK_JS_NODE_VERSION_SUPPORT_WARNING_DISABLED: 'true' }
+
 /**
  * The environment of the site, the worker, the fakes and their commands on one machine.
  * @param {object} options
@@ -40,6 +43,7 @@ export function localEnvironment({ base, data, ports, databaseUrl, dev }) {
   const kept = Object.entries(base).filter(([name]) => !/^npm_/i.test(name) && !name.startsWith('PG'))
   return {
     ...Object.fromEntries(kept),
+    ...QUIET_SDK,
     NODE_ENV: dev ? 'development' : 'production',
     EVENPENNY_LOCAL: 'yes',
     ...(dev ? { EVENPENNY_DEV: 'yes' } : {}),
@@ -66,5 +70,5 @@ export const siteAddress = (ports) => `http://localhost:${ports.site}`
  */
 export function testEnvironment(env) {
   const kept = Object.entries(env).filter(([name]) => !/^(npm_|EVENPENNY_|PG)/i.test(name) && name !== 'NODE_ENV')
-  return { ...Object.fromEntries(kept.filter(([name]) => name !== 'FORCE_COLOR')), NO_COLOR: '1' }
+  return { ...Object.fromEntries(kept.filter(([name]) => name !== 'FORCE_COLOR')), ...QUIET_SDK, NO_COLOR: '1' }
 }

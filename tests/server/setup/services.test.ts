@@ -59,11 +59,14 @@ describe('environments', () => {
     expect(Object.keys(env)).not.toContain('PGHOST')
     expect(Object.keys(env)).not.toContain('npm_config_x')
     expect(env.EVENPENNY_DEV).toBeUndefined()
+    // The name and value that @aws-sdk/core reads.
+    expect(env.AWS_SDK_JS_NODE_VERSION_SUPPORT_WARNING_DISABLED).toBe('true')
   })
   it('keeps a real service’s address out of the tests', () => {
     expect(testEnvironment({ HOME: '/h', EVENPENNY_DATABASE_URL: 'postgres://real', PGPASSWORD: 'x' })).toEqual({
       HOME: '/h',
       NO_COLOR: '1',
+      AWS_SDK_JS_NODE_VERSION_SUPPORT_WARNING_DISABLED: 'true',
     })
   })
 })
