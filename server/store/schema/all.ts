@@ -1,5 +1,6 @@
 export * from './draw.ts'
 export * from './entrant.ts'
+export * from './entry.ts'
 export * from './operation.ts'
 export * from './people.ts'
 export * from './record.ts'

@@ -52,8 +52,17 @@ export const entrantPerson = pgTable(
     email: text(),
     phone: text(),
     numbers: text(),
+    /** How the entrant chose to be announced: by the organiser's label, by initials, or by their stable code alone. */
+    announced: text({ enum: ['label', 'initials', 'code'] })
+      .notNull()
+      .default('label'),
+    /** The organiser's label, while the entrant chose another: `label` is always the words that count. */
+    givenLabel: text(),
   },
   (t) => [
+    check('entrant_person_announced', sql`${t.announced} in ('label', 'initials', 'code')`),
+    check('entrant_person_given_label', sql`(${t.announced} = 'label') = (${t.givenLabel} is null)`),
+    index('entrant_person_by_email').on(sql`lower(${t.email})`).where(sql`${t.email} is not null`),
     foreignKey({ columns: [t.drawId, t.entrantId], foreignColumns: [entrant.drawId, entrant.id] }).onDelete('cascade'),
     index('entrant_person_by_name').on(t.drawId, sql`lower(${t.name})`, t.entrantId),
     index('entrant_person_by_label').on(t.drawId, sql`lower(${t.label})`, t.entrantId),

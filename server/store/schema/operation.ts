@@ -9,7 +9,19 @@ export const mail = pgTable(
     id: bigint({ mode: 'number' }).primaryKey().generatedAlwaysAsIdentity(),
     key: text().notNull().unique(),
     kind: text({
-      enum: ['seal', 'result', 'won', 'postponed', 'cancelled', 'failed', 'invitation', 'password-reset'],
+      enum: [
+        'entry',
+        'entry-link',
+        'correction',
+        'seal',
+        'result',
+        'won',
+        'postponed',
+        'cancelled',
+        'failed',
+        'invitation',
+        'password-reset',
+      ],
     }).notNull(),
     drawId: uuid(),
     /** For mails to entrants: the leaf whose person it goes to, so that a name is stored once. */
@@ -18,6 +30,8 @@ export const mail = pgTable(
     entrantId: bigint({ mode: 'number' }),
     /** For notices: the log event that they tell of. */
     logIndex: bigint({ mode: 'number' }),
+    /** For answers: the request that was answered. */
+    correctionId: bigint({ mode: 'number' }),
     messageId: text().notNull().unique(),
     state: text({ enum: ['queued', 'sent', 'failed', 'dropped'] })
       .notNull()
