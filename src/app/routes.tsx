@@ -5,6 +5,11 @@ import { officeRoutes } from '#src/features/office/routes.tsx'
 import { ErrorPage } from './error-page.tsx'
 import { PublicLayout } from './public-page.tsx'
 
+/** An address that is no page's: the error page says so. */
+function nowhere(): never {
+  throw new Response(null, { status: 404 })
+}
+
 /**
  * Every page of the site. Pages are fetched when they are first needed, so that a reader of a result gets none of the
  * office; each page module exports `Component` and, where it reads anything, `loader`.
@@ -34,6 +39,7 @@ export const routes: RouteObject[] = [
       ...accountRoutes,
       ...officeRoutes,
       ...administratorRoutes,
+      { path: '*', loader: nowhere, Component: Outlet },
     ],
   },
 ]

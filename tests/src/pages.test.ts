@@ -234,6 +234,7 @@ describe('addresses that lead nowhere', () => {
     '/draws/bell-ropes-2026/picks/900',
     '/draws/bell-ropes-2026/picks/first',
     '/organisations/nobody',
+    '/office/quarry-lane/no/such/page',
   ])('%s answers 404 with a page that says what to do', async (path) => {
     const { status, text, main, document } = await get(path)
     expect(status).toBe(404)
