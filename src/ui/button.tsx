@@ -1,5 +1,6 @@
 import type { ButtonHTMLAttributes, ReactNode } from 'react'
 import { Link } from './link.tsx'
+import { useHydrated } from './use-hydrated.ts'
 
 interface Look {
   readonly quiet?: boolean
@@ -14,6 +15,8 @@ const classes = ({ quiet, small, danger }: Look) =>
 interface ButtonProps extends ButtonHTMLAttributes<HTMLButtonElement>, Look {
   /** Set while the action runs: the button stays focusable, says so, and ignores further clicks. */
   readonly busy?: boolean
+  /** Its form works without JavaScript, as a search does. Other forms wait until the page's code is there. */
+  readonly native?: boolean
 }
 
 export function Button({
@@ -21,16 +24,19 @@ export function Button({
   small,
   danger,
   busy = false,
+  native = false,
   type = 'button',
   onClick,
   children,
   ...rest
 }: ButtonProps) {
+  const waking = !useHydrated() && type === 'submit' && !native
   return (
     <button
       {...rest}
       type={type}
-      className={classes({ quiet, small, danger })}
+      className={`${classes({ quiet, small, danger })}${waking ? ' waking' : ''}`}
+      disabled={waking || rest.disabled}
       aria-disabled={busy || rest['aria-disabled'] ? true : undefined}
       aria-busy={busy ? true : undefined}
       onClick={(event) => {

@@ -112,3 +112,47 @@ export function TickField({ name, label, hint, error, ...input }: TickFieldProps
     </div>
   )
 }
+
+interface RadioFieldProps {
+  /** Also the id of the first choice, to which an error summary links. */
+  readonly name: string
+  readonly legend: ReactNode
+  readonly error?: string | undefined
+  readonly defaultValue: string
+  readonly options: readonly { readonly value: string; readonly text: ReactNode; readonly hint?: ReactNode }[]
+}
+
+/** One of a few choices whose words need more room than a list that drops down has. */
+export function RadioField({ name, legend, error, defaultValue, options }: RadioFieldProps) {
+  const idOf = (value: string, index: number) => (index === 0 ? name : `${name}-${value}`)
+  return (
+    <fieldset className={`field${error ? ' bad' : ''}`} aria-describedby={error ? `${name}-error` : undefined}>
+      <legend>{legend}</legend>
+      {error ? (
+        <p className="fault" id={`${name}-error`}>
+          <b>Error:</b> {error}
+        </p>
+      ) : null}
+      {options.map(({ value, text, hint }, index) => (
+        <span className="tick choice" key={value}>
+          <input
+            type="radio"
+            name={name}
+            id={idOf(value, index)}
+            value={value}
+            defaultChecked={value === defaultValue}
+            aria-describedby={hint ? `${idOf(value, index)}-hint` : undefined}
+          />
+          <span>
+            <label htmlFor={idOf(value, index)}>{text}</label>
+            {hint ? (
+              <span className="hint block" id={`${idOf(value, index)}-hint`}>
+                {hint}
+              </span>
+            ) : null}
+          </span>
+        </span>
+      ))}
+    </fieldset>
+  )
+}

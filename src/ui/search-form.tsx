@@ -26,7 +26,9 @@ export function SearchForm({ action, label, hint, query, children }: SearchFormP
         maxLength={100}
       />
       {children}
-      <Button type="submit">Search</Button>
+      <Button type="submit" native>
+        Search
+      </Button>
     </Form>
   )
 }

@@ -7,7 +7,7 @@ import { type DrawFacts, problemsOfOpening, problemsOfSealing, waitingFor } from
 import { draw, prize, witness } from '#server/store/schema/draw.ts'
 import { entrantPerson } from '#server/store/schema/entrant.ts'
 import { organisation } from '#server/store/schema/people.ts'
-import { archive } from '#server/store/schema/result.ts'
+import { archive, result } from '#server/store/schema/result.ts'
 import { instantOf, instantOrNull } from '#server/time/instants.ts'
 import { localFromInstant } from '#server/time/local-time.ts'
 import { moneyOf, prizesOf } from './draw-page.ts'
@@ -112,7 +112,7 @@ export async function getOfficeDraw(
     .where(eq(draw.id, input.draw))
   if (!found) return null
   const { draw: row, organisation: owner } = found
-  const [prizes, withEmail, seals, witnesses, mail, jobs, [stored]] = await Promise.all([
+  const [prizes, withEmail, seals, witnesses, mail, jobs, [stored], [settled]] = await Promise.all([
     prizesOf(db, row.id),
     withEmailOf(db, row.id),
     sealsOf(db, row.id),
@@ -120,6 +120,7 @@ export async function getOfficeDraw(
     mailCountsOf(db, row.id),
     jobsOf(db, row.id),
     db.select().from(archive).where(eq(archive.drawId, row.id)),
+    db.select({ digest: result.digest }).from(result).where(eq(result.drawId, row.id)),
   ])
   const inForce = sealInForce(seals)
   const facts = factsOf(row, owner, prizes)
@@ -156,6 +157,7 @@ export async function getOfficeDraw(
     sealedAt: instantOrNull(row.sealedAt),
     drawnAt: instantOrNull(row.drawnAt),
     sealDigest: inForce?.digest ?? null,
+    resultDigest: settled?.digest ?? null,
     beaconRoundAt: instantOrNull(inForce?.beaconRoundAt ?? null),
     ...witnesses,
     may: mayOf(row, input.rights, problems, inForce?.beaconRoundAt ?? null, now),

@@ -108,6 +108,8 @@ export const officeDraw = z.object({
   sealedAt: instant.nullable(),
   drawnAt: instant.nullable(),
   sealDigest: hex32.nullable(),
+  /** What a witness confirms after the draw. */
+  resultDigest: hex32.nullable(),
   /** From the beacon's round on nobody can postpone, cancel or replace. */
   beaconRoundAt: instant.nullable(),
   witnesses: z.array(

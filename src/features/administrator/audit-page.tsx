@@ -35,7 +35,7 @@ export function Component() {
       <Head title="Audit trail" description="Who did what, newest first." />
       <Title
         title="Audit trail"
-        lead="Who did what, newest first. Nothing here can be changed or taken away; names and details can be erased when they must be."
+        lead="Who did what, newest first, in UTC. Nothing here can be changed or taken away; names and details can be erased when they must be."
       />
       <Part title={search.organisation ? `Of ${search.organisation}` : 'Of the whole site'}>
         <SearchForm action="/admin/audit" label="Person, action or draw" query={search.q}>
@@ -58,7 +58,7 @@ export function Component() {
             <ul className="account">
               {data.items.map((entry) => (
                 <li key={entry.id}>
-                  <Time at={entry.at} timeZone="UTC" />
+                  <Time at={entry.at} timeZone="UTC" as="brief" thisYear={0} />
                   <div>
                     <p>{entry.sentence}</p>
                     <p className="exact">

@@ -1,9 +1,10 @@
 const WORDS: Record<string, string> = {
-  'close-due-draws': 'Close lists whose time has come',
+  close: 'Close a list whose time has come',
   settle: 'Settle a draw',
   archive: 'Keep a proof archive',
   seal: 'Seal a long list',
-  mail: 'Send a mail',
+  'prepare-mail': 'Write the mails of a draw',
+  'send-mail': 'Send the mails that are due',
 }
 
 /** A queue's name in words; an unknown one as it stands, without its hyphens. */

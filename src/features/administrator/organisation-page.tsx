@@ -9,7 +9,6 @@ import { load } from '#src/lib/loading.ts'
 import { detailsOf, useSubmit } from '#src/lib/use-submit.ts'
 import { Button } from '#src/ui/button.tsx'
 import { ErrorSummary } from '#src/ui/error-summary.tsx'
-import { countOf } from '#src/ui/format-number.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Facts, Part, Title } from '#src/ui/page.tsx'
 import { Failure, Skeleton } from '#src/ui/states.tsx'
@@ -94,10 +93,7 @@ function Particulars({ organisation }: { readonly organisation: OrganisationRow 
     await queryClient.invalidateQueries({ queryKey: ['administrator'] })
   })
   return (
-    <Part
-      title="Particulars"
-      note={`A new name shows on its pages at once. What ${countOf(organisation.draws.sealed ?? 0, 'sealed draw')} fixed stays as sealed.`}
-    >
+    <Part title="Particulars" note="A new name shows on its pages at once. What its seals have fixed stays as sealed.">
       <form
         className="form narrow-form"
         method="post"

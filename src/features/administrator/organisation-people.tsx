@@ -8,10 +8,11 @@ import {
 import type { ResponseOf } from '#shared/schemas/endpoint.ts'
 import type { Role } from '#shared/schemas/values.ts'
 import { useSubmit } from '#src/lib/use-submit.ts'
-import { Button } from '#src/ui/button.tsx'
+import { Button, TextButton } from '#src/ui/button.tsx'
 import { DataTable } from '#src/ui/data-table.tsx'
 import { ErrorSummary } from '#src/ui/error-summary.tsx'
 import { SelectField, TextField } from '#src/ui/field.tsx'
+import { capitalise } from '#src/ui/format-number.ts'
 import { Part } from '#src/ui/page.tsx'
 import { Time } from '#src/ui/time.tsx'
 
@@ -37,7 +38,7 @@ export function OrganisationPeople({ slug, zone, people, invitations }: Organisa
           columns={[
             { key: 'name', head: 'Name', rowHead: true, cell: (person) => person.name },
             { key: 'email', head: 'E-mail', cell: (person) => person.email },
-            { key: 'role', head: 'Role', cell: (person) => person.role },
+            { key: 'role', head: 'Role', cell: (person) => capitalise(person.role) },
             { key: 'since', head: 'Since', cell: (person) => <Time at={person.since} timeZone={zone} as="date" /> },
             { key: 'help', head: 'Help', cell: (person) => <ResetButton person={person.id} name={person.name} /> },
           ]}
@@ -52,7 +53,7 @@ export function OrganisationPeople({ slug, zone, people, invitations }: Organisa
             rowKey={(invitation) => invitation.id}
             columns={[
               { key: 'email', head: 'E-mail', rowHead: true, cell: (invitation) => invitation.email },
-              { key: 'role', head: 'Role', cell: (invitation) => invitation.role },
+              { key: 'role', head: 'Role', cell: (invitation) => capitalise(invitation.role) },
               { key: 'by', head: 'Invited by', cell: (invitation) => invitation.invitedBy },
               {
                 key: 'expires',
@@ -74,15 +75,13 @@ function ResetButton({ person, name }: { readonly person: string; readonly name:
   if (sent) return <span role="status">A link is on its way.</span>
   return (
     <>
-      <Button
-        small
-        quiet
-        busy={form.busy}
+      <TextButton
+        aria-disabled={form.busy || undefined}
         aria-label={`Send ${name} a link to set a new password`}
         onClick={() => form.submit({ params: { person } })}
       >
         Send a new-password link
-      </Button>
+      </TextButton>
       {form.detail ? (
         <span className="fault" role="alert">
           {form.detail}

@@ -81,6 +81,7 @@ export function officeDraw(changes: Partial<OfficeDraw> = {}): OfficeDraw {
     sealedAt: null,
     drawnAt: null,
     sealDigest: null,
+    resultDigest: null,
     beaconRoundAt: null,
     witnesses: [],
     statements: [],

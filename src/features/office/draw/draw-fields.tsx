@@ -1,5 +1,5 @@
 import type { DrawInput, OfficeDraw } from '#shared/schemas/api/office.ts'
-import { SelectField, TextArea, TextField } from '#src/ui/field.tsx'
+import { RadioField, TextArea, TextField } from '#src/ui/field.tsx'
 import { zoneName } from '#src/ui/format-time.ts'
 import { moneyText, parseMoney } from '../money.ts'
 
@@ -109,9 +109,9 @@ export function DrawFields({ values, defaults, timeZone, currency, faultOf }: Dr
           error={faultOf('drawAt')}
         />
       </div>
-      <SelectField
+      <RadioField
         name="rule"
-        label="Rule"
+        legend="Rule"
         defaultValue={values?.rule ?? 'one-prize-each'}
         error={faultOf('rule')}
         options={Object.entries(RULE_WORDS).map(([value, text]) => ({ value, text }))}

@@ -11,7 +11,8 @@ import { Title } from '#src/ui/page.tsx'
 import { StateTicket } from '#src/ui/state-ticket.tsx'
 import { Failure, Skeleton } from '#src/ui/states.tsx'
 import { officeDrawQuery } from '../api/queries.ts'
-import { drawPath, drawsPath, type Step } from '../paths.ts'
+import { drawPath, drawsPath } from '../paths.ts'
+import { useRole } from '../use-role.ts'
 import { roadOf, type Stage } from './road.ts'
 
 export async function loader(args: LoaderFunctionArgs) {
@@ -93,20 +94,34 @@ function sinceWords(draw: OfficeDraw): string {
 const MARK_WORDS: Record<Stage['mark'], string> = { done: ', done', now: ', being worked on', ahead: '' }
 
 function Road({ draw, organisation }: { readonly draw: OfficeDraw; readonly organisation: string }) {
+  const witness = useRole() === 'witness'
+  // The draw itself comes by itself; and a witness sees nobody's name, address or number.
+  const linked = (step: Stage['step']) => step !== '' && !(witness && (step === 'entrants' || step === 'seal'))
   return (
     <nav aria-label="Steps of this draw">
       <ol className="road">
+        <li className="first">
+          <NavLink to={drawPath(organisation, draw.id)} end>
+            Overview
+          </NavLink>
+        </li>
         {roadOf(draw).map((stage) => (
           <li key={stage.step} className={stage.mark}>
-            <NavLink to={drawPath(organisation, draw.id, stage.step as Step)} end>
-              {stage.title}
-            </NavLink>
+            {linked(stage.step) ? (
+              <NavLink to={drawPath(organisation, draw.id, stage.step)} end>
+                {stage.title}
+              </NavLink>
+            ) : (
+              stage.title
+            )}
             <span className="vh">{MARK_WORDS[stage.mark]}</span>
           </li>
         ))}
-        <li className="apart">
-          <NavLink to={drawPath(organisation, draw.id, 'history')}>Who changed what</NavLink>
-        </li>
+        {witness ? null : (
+          <li className="apart">
+            <NavLink to={drawPath(organisation, draw.id, 'history')}>Who changed what</NavLink>
+          </li>
+        )}
       </ol>
     </nav>
   )

@@ -105,7 +105,7 @@ function Entry({ entry, timeZone }: EntryProps) {
         <p className="exact">{entry.actor ?? 'The site itself'}</p>
         {changes.length > 0 ? (
           <details className="changes">
-            <summary>{countOf(changes.length, 'field')}</summary>
+            <summary>See {countOf(changes.length, 'field')}</summary>
             <Changes changes={changes} before={entry.before !== null} after={entry.after !== null} />
           </details>
         ) : null}

@@ -12,8 +12,9 @@ const TITLES: Record<string, string> = {
   settle: 'Settling the draw',
   archive: 'Keeping the proof archive',
   seal: 'Sealing the list',
-  mail: 'Sending mails',
-  'close-due-draws': 'Closing the list',
+  close: 'Closing the list',
+  'prepare-mail': 'Writing the mails',
+  'send-mail': 'Sending the mails',
 }
 
 /** A job's name in words; an unknown one as it stands, without its hyphens. */

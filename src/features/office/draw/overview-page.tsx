@@ -1,7 +1,7 @@
 import type { OfficeDraw } from '#shared/schemas/api/office.ts'
 import { Head } from '#src/lib/head.tsx'
 import { Digest } from '#src/ui/digest.tsx'
-import { formatBytes, formatNumber } from '#src/ui/format-number.ts'
+import { countOf, formatBytes, formatNumber } from '#src/ui/format-number.ts'
 import { formatMoment } from '#src/ui/format-time.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Facts, Part } from '#src/ui/page.tsx'
@@ -67,7 +67,16 @@ function MailPart({ draw }: { readonly draw: OfficeDraw }) {
   if (kinds.length === 0 && draw.state !== 'sealed' && draw.state !== 'drawn') return null
   const without = draw.counts.entrants - draw.counts.withEmail
   return (
-    <Part title="Mails" note={without > 0 ? `${formatNumber(without)} entrants have no e-mail address` : undefined}>
+    <Part
+      title="Mails"
+      note={
+        without > 0 ? (
+          <>
+            {countOf(without, 'entrant')} without an <span className="nb">e-mail</span> address
+          </>
+        ) : undefined
+      }
+    >
       {kinds.length === 0 ? (
         <p>No entrant has an e-mail address. Tell them by letter or telephone.</p>
       ) : (

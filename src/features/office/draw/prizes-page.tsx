@@ -4,7 +4,7 @@ import { Head } from '#src/lib/head.tsx'
 import { useSubmit } from '#src/lib/use-submit.ts'
 import { Announcer } from '#src/ui/announcer.tsx'
 import { Button } from '#src/ui/button.tsx'
-import { DataTable } from '#src/ui/data-table.tsx'
+import { DataTable, type Column } from '#src/ui/data-table.tsx'
 import { ErrorSummary } from '#src/ui/error-summary.tsx'
 import { countOf, formatMoney, formatNumber } from '#src/ui/format-number.ts'
 import { Part } from '#src/ui/page.tsx'
@@ -166,6 +166,15 @@ function Editor({ draw }: { readonly draw: OfficeDraw }) {
   )
 }
 
+type PrizeRow = OfficeDraw['prizes'][number]
+const DONOR: Column<PrizeRow> = { key: 'donor', head: 'Given by', cell: (prize) => prize.donor ?? '' }
+const VALUE: Column<PrizeRow> = {
+  key: 'value',
+  head: 'Value',
+  numeric: true,
+  cell: (prize) => (prize.value ? formatMoney(prize.value) : ''),
+}
+
 function Reader({ draw }: { readonly draw: OfficeDraw }) {
   return (
     <Part
@@ -180,13 +189,8 @@ function Reader({ draw }: { readonly draw: OfficeDraw }) {
           rowKey={(prize) => prize.id}
           columns={[
             { key: 'name', head: 'Prize', rowHead: true, cell: (prize) => prize.name },
-            { key: 'donor', head: 'Given by', cell: (prize) => prize.donor ?? '' },
-            {
-              key: 'value',
-              head: 'Value',
-              numeric: true,
-              cell: (prize) => (prize.value ? formatMoney(prize.value) : ''),
-            },
+            ...(draw.prizes.some(({ donor }) => donor) ? [DONOR] : []),
+            ...(draw.prizes.some(({ value }) => value) ? [VALUE] : []),
             { key: 'quantity', head: 'How many', numeric: true, cell: (prize) => formatNumber(prize.quantity) },
           ]}
         />

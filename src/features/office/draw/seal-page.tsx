@@ -128,12 +128,6 @@ function Prepare({ draw, summary }: { readonly draw: OfficeDraw; readonly summar
           {summary.cautions.map((caution) => (
             <li key={caution}>{caution}</li>
           ))}
-          {summary.withoutEmail > 0 ? (
-            <li>
-              {formatNumber(summary.withoutEmail)} of the entrants have no e-mail address. Their receipts cannot be
-              mailed.
-            </li>
-          ) : null}
         </ul>
       </Part>
       <Confirm draw={draw} summary={summary} />

@@ -2,6 +2,7 @@ import { nameWitness, removeWitness, stateAsWitness, type OfficeDraw } from '#sh
 import { useQuery } from '@tanstack/react-query'
 import { useState } from 'react'
 import { useApp } from '#src/lib/app-context.ts'
+import { sessionQuery } from '#src/lib/session.ts'
 import { useSubmit } from '#src/lib/use-submit.ts'
 import { Button, TextButton } from '#src/ui/button.tsx'
 import { digestGroups } from '#src/ui/digest.tsx'
@@ -39,7 +40,7 @@ export function WitnessPart({ draw }: { readonly draw: OfficeDraw }) {
           ))}
         </ul>
       )}
-      {draw.may.state && draw.sealDigest ? <Speak draw={draw} digest={draw.sealDigest} /> : null}
+      <Speak draw={draw} />
       {mayName ? <Name draw={draw} /> : null}
     </Part>
   )
@@ -154,10 +155,37 @@ function Name({ draw }: { readonly draw: OfficeDraw }) {
   )
 }
 
-function Speak({ draw, digest }: { readonly draw: OfficeDraw; readonly digest: string }) {
+/** Whether a witness has spoken about what is in force now. A statement about a seal that was replaced is not. */
+export function hasSpoken(
+  draw: Pick<OfficeDraw, 'statements' | 'sealedAt'>,
+  witness: string,
+  about: 'seal' | 'result',
+) {
+  return draw.statements.some(
+    (said) =>
+      said.witness === witness && said.about === about && (about === 'result' || said.at >= (draw.sealedAt ?? '')),
+  )
+}
+
+function Speak({ draw }: { readonly draw: OfficeDraw }) {
+  const { api } = useApp()
+  const me = useQuery(sessionQuery(api)).data?.person?.id
+  const about = draw.state === 'sealed' ? 'seal' : 'result'
+  const digest = about === 'seal' ? draw.sealDigest : draw.resultDigest
+  const witness = draw.witnesses.find(({ person }) => person !== null && person.id === me)
+  if (!draw.may.state || digest === null || (witness && hasSpoken(draw, witness.name, about))) return null
+  return <SpeakForm draw={draw} about={about} digest={digest} />
+}
+
+interface SpeakFormProps {
+  readonly draw: OfficeDraw
+  readonly about: 'seal' | 'result'
+  readonly digest: string
+}
+
+function SpeakForm({ draw, about, digest }: SpeakFormProps) {
   const keep = useKeepDraw()
   const form = useSubmit(stateAsWitness, keep)
-  const about = draw.state === 'sealed' ? 'seal' : 'result'
   const say = (verdict: 'confirmed' | 'refused', words: string) =>
     form.submit({ params: { draw: draw.id }, body: { about, digest, verdict, words } })
   return (
@@ -180,8 +208,8 @@ function Speak({ draw, digest }: { readonly draw: OfficeDraw; readonly digest: s
         </p>
       ) : (
         <p className="measure">
-          Run the check on the public page or on your own computer first. You confirm the result that stands under this
-          seal: <span className="hex">{digestGroups(digest).join(' ')}</span>
+          Run the check on the public page or on your own computer first. You confirm this result:{' '}
+          <span className="hex">{digestGroups(digest).join(' ')}</span>
         </p>
       )}
       {form.failed ? <ErrorSummary detail={form.detail} errors={form.faults} /> : null}

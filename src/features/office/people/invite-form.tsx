@@ -5,7 +5,7 @@ import type { Role } from '#shared/schemas/values.ts'
 import { useSubmit } from '#src/lib/use-submit.ts'
 import { Button } from '#src/ui/button.tsx'
 import { ErrorSummary } from '#src/ui/error-summary.tsx'
-import { TextField } from '#src/ui/field.tsx'
+import { RadioField, TextField } from '#src/ui/field.tsx'
 import { Part } from '#src/ui/page.tsx'
 import { ROLES } from './role-words.ts'
 
@@ -34,28 +34,7 @@ export function InviteForm({ organisation }: { readonly organisation: string }) 
       >
         {form.failed ? <ErrorSummary detail={form.detail} errors={form.faults} /> : null}
         <TextField name="email" type="email" label="E-mail address" autoComplete="off" error={form.faultOf('email')} />
-        <fieldset className="field">
-          <legend>Role</legend>
-          {form.faultOf('role') ? (
-            <p className="fault">
-              <b>Error:</b> {form.faultOf('role')}
-            </p>
-          ) : null}
-          {ROLES.map(({ value, text, may }, index) => (
-            <span className="tick mt-unit" key={value}>
-              <input
-                type="radio"
-                name="role"
-                id={index === 0 ? 'role' : `role-${value}`}
-                value={value}
-                defaultChecked={index === 0}
-              />
-              <label htmlFor={index === 0 ? 'role' : `role-${value}`}>
-                {text} <span className="hint block">{may}</span>
-              </label>
-            </span>
-          ))}
-        </fieldset>
+        <RadioField name="role" legend="Role" defaultValue="organiser" error={form.faultOf('role')} options={ROLES} />
         <p className="buttons">
           <Button type="submit" busy={form.busy}>
             Send the invitation

@@ -1,20 +1,20 @@
 import type { Role } from '#shared/schemas/values.ts'
 
 /** What each role may, for whoever gives it. */
-export const ROLES: readonly { readonly value: Role; readonly text: string; readonly may: string }[] = [
+export const ROLES: readonly { readonly value: Role; readonly text: string; readonly hint: string }[] = [
   {
     value: 'organiser',
     text: 'Organiser',
-    may: 'sets up draws, gathers entrants and prizes, prepares the seal, enters tosses',
+    hint: 'Sets up draws, gathers entrants and prizes, prepares the seal, enters tosses.',
   },
   {
     value: 'promoter',
     text: 'Promoter',
-    may: 'all of that, and opens, seals, postpones and cancels draws, and manages these people',
+    hint: 'All of that, and opens, seals, postpones and cancels draws, and manages these people.',
   },
   {
     value: 'witness',
     text: 'Witness',
-    may: 'sees the draws in which they are named, confirms or refuses, changes nothing',
+    hint: 'Sees the draws in which they are named, confirms or refuses, changes nothing.',
   },
 ]
