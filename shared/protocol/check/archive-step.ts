@@ -24,6 +24,8 @@ export const checkMembers: CheckStep = async (state) => {
     }
   }
   const total = source.names.reduce((sum, name) => sum + source.size(name), 0)
+  const digests = new Map<string, string>()
+  state.digests = digests
   let done = 0
   for (const name of source.names) {
     if (name === SUMS_MEMBER) continue
@@ -44,7 +46,9 @@ export const checkMembers: CheckStep = async (state) => {
       state.progress(done, total)
       await state.tools.pause?.()
     }
-    if (toHex(hash.digest()) !== expected) {
+    const digest = toHex(hash.digest())
+    digests.set(name, digest)
+    if (digest !== expected) {
       throw new StepFailure('sum-mismatch', name, `${name} does not have the digest in ${SUMS_MEMBER}.`)
     }
     if (entries !== null) state.entries = entries.end()

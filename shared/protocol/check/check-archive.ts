@@ -16,6 +16,7 @@ import {
   throwIfCancelled,
 } from '#shared/protocol/check/state.ts'
 import type { CheckTools } from '#shared/protocol/check/tools.ts'
+import { stepFacts, type StepFacts } from '#shared/protocol/check/step-facts.ts'
 import { checkTranscriptDigest } from '#shared/protocol/check/transcript-step.ts'
 import { type CheckVerdict, verdictOf } from '#shared/protocol/check/verdict.ts'
 import { checkWalks } from '#shared/protocol/check/walks-step.ts'
@@ -47,6 +48,7 @@ export type CheckEvent =
       readonly step: StepNumber
       readonly title: string
       readonly found: string
+      readonly facts: StepFacts
       readonly milliseconds: number
     }
   | {
@@ -54,6 +56,7 @@ export type CheckEvent =
       readonly step: StepNumber
       readonly title: string
       readonly failure: CheckFailure
+      readonly facts: StepFacts
       readonly milliseconds: number
     }
 
@@ -93,12 +96,14 @@ export async function checkArchive(input: CheckInput): Promise<CheckReport> {
     const started = tools.now()
     try {
       const found = await STEPS[step](state)
-      onEvent({ kind: 'step-passed', step, title, found, milliseconds: tools.now() - started })
+      const milliseconds = tools.now() - started
+      onEvent({ kind: 'step-passed', step, title, found, facts: stepFacts(step, state), milliseconds })
     } catch (error) {
       const reason = asStepFailure(error)
       if (reason === null) throw error
       const failure = { step, code: reason.code, at: reason.at, message: reason.message }
-      onEvent({ kind: 'step-failed', step, title, failure, milliseconds: tools.now() - started })
+      const milliseconds = tools.now() - started
+      onEvent({ kind: 'step-failed', step, title, failure, facts: stepFacts(step, state), milliseconds })
       return { ok: false, failure }
     }
   }

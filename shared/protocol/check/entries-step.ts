@@ -28,6 +28,7 @@ export const checkEntries: CheckStep = async (state) => {
     await state.tools.pause?.()
   }
   const computed = tree.result().root
+  state.entriesRoot = computed
   if (toHex(computed) !== root) {
     const message = `It leads to the root ${toHex(computed)}, and the seal states ${root}.`
     throw new StepFailure('root-mismatch', MEMBER, message)

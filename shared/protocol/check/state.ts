@@ -42,6 +42,8 @@ export interface CheckState {
   readonly open: () => Promise<MembersSource>
   readonly progress: (done: number, total: number) => void
   source: MembersSource
+  /** SHA-256 of each member, in hex, in the archive's order, as far as step 1 has come. */
+  digests: ReadonlyMap<string, string>
   publicKey: Uint8Array
   fingerprint: string
   seal: Seal
@@ -49,9 +51,14 @@ export interface CheckState {
   sealDigestHex: string
   /** The list: read in step 1, where its bytes go by anyway, and sound from step 4 on. */
   entries: ReadEntries
+  /** The root to which `entries` leads. */
+  entriesRoot: Uint8Array
   result: DrawResult
   beaconRandomness: Uint8Array | null
   tossBits: readonly number[] | null
+  /** What all flips are derived from; null where they were tossed. */
+  drawKey: Uint8Array | null
+  walked: { readonly picks: number; readonly coins: number; readonly flips: number }
   transcriptDigest: string
   /** Winning leaves whose label is not open. */
   withheld: readonly number[]

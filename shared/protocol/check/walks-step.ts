@@ -12,6 +12,7 @@ const MEMBER = 'transcript.jsonl'
 /** Step 9: every coin of every pick from the flips, in order, with award, leaf, remaining and tickets (sections 5 to 8). */
 export const checkWalks: CheckStep = async (state) => {
   const { prizes, reserves, rule } = state.seal
+  state.drawKey = drawKeyOf(state)
   const picks = drawPicks(state.tools.sha256, {
     tickets: state.entries.tickets,
     rule,
@@ -49,6 +50,7 @@ export const checkWalks: CheckStep = async (state) => {
       throw new StepFailure('too-many-picks', `${MEMBER} line ${made + 1}`, `The draw has only ${made} picks.`)
     }
   } finally {
+    state.walked = { picks: made, coins, flips }
     // Closes the archive's stream where a failure left it in the middle.
     await lines.return()
   }
@@ -57,12 +59,15 @@ export const checkWalks: CheckStep = async (state) => {
   return `${made} picks with ${coins} coins and ${flips} flips, each as the sources give it.`
 }
 
-function flipsOf(state: CheckState): DrawFlips {
+function drawKeyOf(state: CheckState): Uint8Array | null {
   const { seed } = state.result.reveal
-  if (seed === null) return { kind: 'tossed', bits: state.tossBits ?? [] }
+  if (seed === null) return null
   const { sealDigest, beaconRandomness, tossBits } = state
-  const key = { sealDigest, seed: hexBytes(seed, 32), beaconRandomness, tossBits }
-  return { kind: 'derived', drawKey: deriveDrawKey(state.tools.sha256, key) }
+  return deriveDrawKey(state.tools.sha256, { sealDigest, seed: hexBytes(seed, 32), beaconRandomness, tossBits })
+}
+
+function flipsOf({ drawKey, tossBits }: CheckState): DrawFlips {
+  return drawKey === null ? { kind: 'tossed', bits: tossBits ?? [] } : { kind: 'derived', drawKey }
 }
 
 /** The result's pick against the walk; `tickets` are the sealed ones. */
