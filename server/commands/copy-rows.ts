@@ -1,4 +1,5 @@
 import { Readable } from 'node:stream'
+import { setImmediate as breathe } from 'node:timers/promises'
 import { pipeline } from 'node:stream/promises'
 import { from as copyFrom } from 'pg-copy-streams'
 import type { PoolClient } from 'pg'
@@ -25,6 +26,8 @@ async function* chunks(
   for await (const row of rows) {
     lines.push(row.map(field).join('\t'))
     if (lines.length === ROWS_A_CHUNK) {
+      // Rows that are made on the spot would keep everything else waiting.
+      await breathe()
       yield Buffer.from(`${lines.join('\n')}\n`)
       lines = []
     }

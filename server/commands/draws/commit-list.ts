@@ -15,7 +15,7 @@ import type { Database } from '#server/store/database.ts'
 import { entrant, entrantPerson } from '#server/store/schema/entrant.ts'
 
 const REFERENCE_LENGTH = 16
-const PAGE = 20_000
+const PAGE = 5000
 /** Entrants between two breaths of the event loop: a few milliseconds of hashing. */
 const SLICE = 500
 

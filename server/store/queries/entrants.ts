@@ -36,6 +36,11 @@ export function presentEntrant({ entrant: row, person }: Joined): EntrantRow {
 /** The text that a search looks through; the same words as in the index entrant_person_words. */
 const WORDS = sql`lower(${entrantPerson.name} || ' ' || ${entrantPerson.label} || ' ' || coalesce(${entrantPerson.email}, '') || ' ' || coalesce(${entrantPerson.phone}, '') || ' ' || coalesce(${entrantPerson.numbers}, ''))`
 
+/** The entrants whose words hold what is looked for, or whose code it is: each by its own index. */
+const found = (drawId: string, q: string): SQL =>
+  sql`select ${entrantPerson.entrantId} from ${entrantPerson} where ${entrantPerson.drawId} = ${drawId} and ${WORDS} like ${containing(q)}
+    union select e.id from entrant e where e.draw_id = ${drawId} and e.code = ${q.toUpperCase()}`
+
 /** Entrants of a draw, searched, sorted and paged by index. `tickets` counts those of all rows found. */
 export async function listEntrants(
   db: Database,
@@ -44,9 +49,7 @@ export async function listEntrants(
   const q = input.q.trim()
   const where = and(
     eq(entrant.drawId, input.draw),
-    q === ''
-      ? undefined
-      : sql`(${entrant.code} = ${q.toUpperCase()} or (${entrantPerson.drawId} = ${input.draw} and ${WORDS} like ${containing(q)}))`,
+    q === '' ? undefined : sql`${entrant.id} in (${found(input.draw, q)})`,
   )
   const direction = input.direction === 'up' ? asc : desc
   const order: Record<typeof input.sort, SQL[]> = {
@@ -56,11 +59,14 @@ export async function listEntrants(
     tickets: [direction(entrant.tickets), direction(entrant.id)],
     code: [direction(entrant.code)],
   }
+  const byPerson = input.sort === 'name' || input.sort === 'label'
+  const base = db.select(fields).from(entrant)
+  // Names are ordered by the index of those who have one; a person who was erased has none to be found by.
+  const rowsOf = byPerson
+    ? base.innerJoin(entrantPerson, and(joined, eq(entrantPerson.drawId, input.draw)))
+    : base.leftJoin(entrantPerson, joined)
   const [rows, totals] = await Promise.all([
-    db
-      .select(fields)
-      .from(entrant)
-      .leftJoin(entrantPerson, joined)
+    rowsOf
       .where(where)
       .orderBy(...order[input.sort])
       .limit(PAGE_SIZE)
@@ -98,7 +104,6 @@ async function foundTotals(db: Database, where: SQL | undefined) {
       tickets: sql<number>`coalesce(sum(${entrant.tickets}), 0)`.mapWith(Number),
     })
     .from(entrant)
-    .leftJoin(entrantPerson, joined)
     .where(where)
   return row ?? { total: 0, tickets: 0 }
 }
