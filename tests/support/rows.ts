@@ -58,6 +58,21 @@ export async function draftRow(
   return { organisationId, drawId }
 }
 
+/** An entry of the log; its leaf is any bytes. */
+export async function insertLogEvent(
+  client: PoolClient | Pool,
+  drawId: string,
+  event: string,
+  digest: string | null = null,
+  supersedes: string | null = null,
+): Promise<void> {
+  await client.query(
+    `insert into log_event (index, at, event, draw_id, organisation, digest, supersedes, leaf)
+     values (log_next_index(), now(), $2, $1, 'rowan-street-band', $3, $4, $5)`,
+    [drawId, event, digest, supersedes, randomBytes(40)],
+  )
+}
+
 /** An open draw with two entrants, of 3 and 4 tickets. */
 export async function openRow(
   pool: Pool,
@@ -65,6 +80,7 @@ export async function openRow(
 ): Promise<Row> {
   const row = await draftRow(pool, options)
   await pool.query(`update draw set state = 'open', opened_at = now() where id = $1`, [row.drawId])
+  await insertLogEvent(pool, row.drawId, 'opened')
   await pool.query(
     `with added as (
        insert into entrant (draw_id, code, tickets, source, added_at)
@@ -90,6 +106,9 @@ export interface SealValues {
   readonly drawAt: string
   readonly roundAt?: string
   readonly supersedes?: string | null
+  readonly seedCommit?: string
+  /** Leaves the log without an entry of it. */
+  readonly unlogged?: boolean
   readonly leaves?: readonly number[]
   readonly entrants?: number
   readonly tickets?: number
@@ -113,7 +132,7 @@ export async function insertSeal(client: PoolClient | Pool, drawId: string, valu
       hex(),
       values.entrants ?? leaves.length,
       values.tickets ?? leaves.reduce((sum, tickets) => sum + tickets, 0),
-      hex(),
+      values.seedCommit ?? hex(),
       hex(),
       values.roundAt ?? values.drawAt,
       values.sealedAt,
@@ -143,6 +162,9 @@ export async function insertSeal(client: PoolClient | Pool, drawId: string, valu
       [id, leaf, `AAAAAAA${leaf + 2}`],
     )
   }
+  if (values.unlogged) return digest
+  const supersedes = values.supersedes ?? null
+  await insertLogEvent(client, drawId, supersedes === null ? 'sealed' : 'replaced', digest, supersedes)
   return digest
 }
 
@@ -167,7 +189,12 @@ export async function sealedRow(
 }
 
 /** The result of a sealed draw, whole. */
-export async function insertResult(client: PoolClient, drawId: string, drawnAt: string): Promise<string> {
+export async function insertResult(
+  client: PoolClient,
+  drawId: string,
+  drawnAt: string,
+  options: { readonly unlogged?: boolean } = {},
+): Promise<string> {
   const bytes = randomBytes(40)
   const digest = createHash('sha256').update(bytes).digest('hex')
   await client.query(
@@ -180,6 +207,7 @@ export async function insertResult(client: PoolClient, drawId: string, drawnAt: 
     [drawId],
   )
   await client.query(`insert into transcript_line (draw_id, pick, line) values ($1, 0, '{}')`, [drawId])
+  if (!options.unlogged) await insertLogEvent(client, drawId, 'drawn', digest)
   return digest
 }
 

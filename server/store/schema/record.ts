@@ -1,5 +1,5 @@
 import { sql } from 'drizzle-orm'
-import { bigint, check, index, jsonb, pgTable, text, uuid } from 'drizzle-orm/pg-core'
+import { bigint, check, index, integer, jsonb, pgTable, primaryKey, text, uuid } from 'drizzle-orm/pg-core'
 import { at, bytes } from './columns.ts'
 
 /** Who did what, append-only and without personal data: people are ids here, their names are in `audit_detail`. */
@@ -73,3 +73,31 @@ export const logNote = pgTable('log_note', {
   salt: text().notNull(),
   text: text().notNull(),
 })
+
+/**
+ * Hashes of the log's whole subtrees (RFC 9162 section 2.1.1): node i of level l stands over the leaves i·2^l to
+ * (i + 1)·2^l − 1. A trigger adds them with each leaf, so that any proof is a few reads; nothing else can.
+ */
+export const logNode = pgTable(
+  'log_node',
+  {
+    level: integer().notNull(),
+    index: bigint({ mode: 'number' }).notNull(),
+    hash: bytes().notNull(),
+  },
+  (t) => [primaryKey({ columns: [t.level, t.index] }), check('log_node_hash', sql`length(${t.hash}) = 32`)],
+)
+
+/** Checkpoints that the site has put into the object store, or is about to. The database compares the root. */
+export const logCheckpoint = pgTable(
+  'log_checkpoint',
+  {
+    size: bigint({ mode: 'number' }).primaryKey(),
+    root: bytes().notNull(),
+    /** The signed note, as it was signed then. */
+    note: text().notNull(),
+    at: at().notNull(),
+    storedAt: at(),
+  },
+  (t) => [check('log_checkpoint_size', sql`${t.size} >= 1`)],
+)

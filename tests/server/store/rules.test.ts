@@ -4,6 +4,7 @@ import {
   closedRow,
   draftRow,
   drawnRow,
+  insertLogEvent,
   insertResult,
   insertSeal,
   openRow,
@@ -120,6 +121,8 @@ describe('the list of entrants', () => {
     )
     await query(more, [drawId])
     await query(`update draw set state = 'open', opened_at = now() where id = $1`, [drawId])
+    expect((await refusal(query(add, [drawId]))).message).toBe('A draw stands in the log before its first entrant.')
+    await insertLogEvent(database.pool, drawId, 'opened')
     await query(add, [drawId])
     for (const change of [
       more,
@@ -363,6 +366,7 @@ describe('what is written for good', () => {
       beacon_observation: 'relay',
       audit_event: 'action',
       log_event: 'event',
+      log_node: 'hash',
       witness_statement: 'verdict',
     }
     for (const [table, column] of Object.entries(tables)) {

@@ -7,7 +7,7 @@ import { checkpointText, logOrigin, openCheckpoint, parseCheckpointText } from '
 import { cosign, verifyCosignatures } from '#shared/log/cosignature.ts'
 import { formatNote, noteKey, parseNote, type SignedNote } from '#shared/log/signed-note.ts'
 import { publicKeyOf, signBytes } from '#shared/protocol/signature.ts'
-import { TestLog } from '../../support/log/test-log.ts'
+import { TestLog } from '#tests/support/log/test-log.ts'
 
 // C2SP tlog-checkpoint.md.
 const example = (

@@ -2,7 +2,7 @@ import { describe, expect, test } from 'vitest'
 import { sha256 } from '#server/adapters/hash/sha256.ts'
 import { utf8 } from '#shared/bytes/bytes.ts'
 import { checkLogProof, parseLogProof } from '#shared/log/log-proof.ts'
-import { TestLog } from '../../support/log/test-log.ts'
+import { TestLog } from '#tests/support/log/test-log.ts'
 
 const sealDigest = 'ab'.repeat(32)
 const resultDigest = 'cd'.repeat(32)

@@ -1,7 +1,7 @@
 import { describe, expect, test } from 'vitest'
 import { sha256 } from '#server/adapters/hash/sha256.ts'
 import { compareHeads, isAlarm, logChangeWords, needsProof, type LogChange } from '#shared/log/monitor.ts'
-import { TestLog } from '../../support/log/test-log.ts'
+import { TestLog } from '#tests/support/log/test-log.ts'
 
 const log = new TestLog()
 for (let i = 0; i < 23; i += 1) log.add(`draw-${i}`, 'opened')
