@@ -43,6 +43,9 @@ export function parseTicketCount(text: string): Result<number, Failure<TicketCou
       `${shown} is not a whole number of tickets. Write 1 or more, without a fraction.`,
     )
   }
+  if (/^0+[1-9][0-9]*$/.test(text)) {
+    return refuse('tickets-unreadable', `write ${shown} without zeros in front, like ${text.replace(/^0+/, '')}.`)
+  }
   if (!/^[1-9][0-9]*$/.test(text)) {
     return refuse('tickets-unreadable', `${shown} is not a whole number of tickets. Write it in digits, like 25.`)
   }

@@ -52,7 +52,11 @@ export async function readEntrantCsv(
   const problems = new Kept<CsvProblem>(options.maxProblems ?? 100)
   const notes = new Kept<EntrantCsvNote>(MAX_NOTES)
   let row = 0
-  const text = decode(bytes, options)
+  const file = new StrictText()
+  const text = file.pieces(bytes, options)
+  // What the row in which the text breaks off lacks is not its fault.
+  let latest: { readonly row: number; readonly problems: readonly CsvProblem[] } = { row: 0, problems: [] }
+  let source: Readable | undefined
   try {
     const first = await readHead(text)
     const parser = parse({
@@ -62,14 +66,15 @@ export async function readEntrantCsv(
       skip_empty_lines: false,
       max_record_size: MAX_ROW_LENGTH,
     })
-    const source = Readable.from(chain(first, text), { objectMode: true })
+    source = Readable.from(chain(first, text), { objectMode: true })
     source.on('error', (error) => parser.destroy(error))
     source.pipe(parser)
     for await (const cells of parser) {
       row++
       const result = validator.push(cells as string[], row)
-      if (result.kind === 'refused') for (const problem of result.problems) problems.add(problem)
-      else if (result.kind === 'entrant') {
+      for (const problem of latest.problems) problems.add(problem)
+      latest = { row, problems: result.kind === 'refused' ? result.problems : [] }
+      if (result.kind === 'entrant') {
         for (const note of result.notes) notes.add(note)
         // No await where none is due: a million turns of the event loop take longer than the rows.
         const waiting = options.onEntrant(result.entrant)
@@ -77,11 +82,21 @@ export async function readEntrantCsv(
       }
     }
   } catch (error) {
-    const problem = readingProblem(error, rowAtFault(error, row))
+    const problem = file.faulty ? notUtf8(rowAtFault(error, row)) : readingProblem(error, rowAtFault(error, row))
     if (problem === null) throw error
+    if (!file.faulty) for (const its of latest.problems) problems.add(its)
     problems.add(problem)
     return result(validator.finish().totals)
+  } finally {
+    // The parser may have stopped in the middle: nobody reads on.
+    source?.destroy()
   }
+  if (file.faulty) {
+    if (file.atRowStart) for (const problem of latest.problems) problems.add(problem)
+    problems.add(notUtf8(file.atRowStart ? row + 1 : row))
+    return result(validator.finish().totals)
+  }
+  for (const problem of latest.problems) problems.add(problem)
   const end = validator.finish()
   for (const problem of end.problems) problems.add(problem)
   return result(end.totals)
@@ -97,27 +112,47 @@ export async function readEntrantCsv(
   }
 }
 
-class NotUtf8 extends Error {}
+/** The text of a strict UTF-8 stream. At bytes that are none it ends early, with the text before them. */
+class StrictText {
+  /** The end was such a fault. */
+  faulty = false
+  /** The text ended at the beginning of a row. */
+  atRowStart = true
 
-async function* decode(bytes: AsyncIterable<Uint8Array>, options: ReadEntrantCsvOptions): AsyncGenerator<string> {
-  const decoder = new TextDecoder('utf-8', { fatal: true })
-  let read = 0
-  const text = (chunk?: Uint8Array) => {
+  async *pieces(bytes: AsyncIterable<Uint8Array>, options: ReadEntrantCsvOptions): AsyncGenerator<string> {
+    const decoder = new TextDecoder('utf-8', { fatal: true })
+    let read = 0
+    for await (const chunk of bytes) {
+      options.signal?.throwIfAborted()
+      read += chunk.length
+      const text = this.#decoded(() => decoder.decode(chunk, { stream: true })) ?? soundStart(chunk)
+      if (text !== '') {
+        this.atRowStart = /[\r\n]$/.test(text)
+        yield text
+      }
+      if (this.faulty) return
+      options.onProgress?.(read)
+    }
+    const rest = this.#decoded(() => decoder.decode())
+    if (rest) yield rest
+  }
+
+  #decoded(decode: () => string): string | null {
     try {
-      return chunk ? decoder.decode(chunk, { stream: true }) : decoder.decode()
+      return decode()
     } catch {
-      throw new NotUtf8()
+      this.faulty = true
+      return null
     }
   }
-  for await (const chunk of bytes) {
-    options.signal?.throwIfAborted()
-    read += chunk.length
-    const decoded = text(chunk)
-    if (decoded !== '') yield decoded
-    options.onProgress?.(read)
-  }
-  const rest = text()
-  if (rest !== '') yield rest
+}
+
+/** The text before the first bytes that are not UTF-8, without the rest of a character that begins in an earlier piece. */
+function soundStart(chunk: Uint8Array): string {
+  const begin = chunk.findIndex((byte) => (byte & 0xc0) !== 0x80)
+  if (begin < 0 || begin > 3) return ''
+  const text = new TextDecoder('utf-8', { ignoreBOM: true }).decode(chunk.subarray(begin))
+  return text.slice(0, Math.max(0, text.indexOf('\ufffd')))
 }
 
 /** Text up to the end of the first line, as far as the longest row that is read at all. */
@@ -142,14 +177,17 @@ function rowAtFault(error: unknown, taken: number): number {
   return (Number.isInteger(finished) ? finished : taken) + 1
 }
 
+const notUtf8 = (row: number): CsvProblem => ({
+  row,
+  column: null,
+  code: 'encoding',
+  message:
+    `Row ${row}: here the file is no longer UTF-8 text. Open it in your spreadsheet and save it again as "CSV UTF-8", ` +
+    'then import the new file.',
+})
+
 function readingProblem(error: unknown, row: number): CsvProblem | null {
   const problem = (code: string, message: string) => ({ row, column: null, code, message })
-  if (error instanceof NotUtf8) {
-    const message =
-      `Near row ${row} the file is not UTF-8 text. Open it in your spreadsheet and save it again as "CSV UTF-8", ` +
-      'then import the new file.'
-    return problem('encoding', message)
-  }
   const code = error instanceof Error && 'code' in error ? String(error.code) : ''
   if (code === 'CSV_QUOTE_NOT_CLOSED') {
     const message = `Row ${row}: a quotation mark opens here and never closes. Close it, or take it out.`

@@ -1,5 +1,6 @@
 import { and, eq, inArray } from 'drizzle-orm'
 import type { EntrantRow } from '#shared/entrants/entrant-csv.ts'
+import { MAX_FILE_BYTES } from '#shared/entrants/file-limit.ts'
 import type { CommandActor } from '#server/commands/actor.ts'
 import { audit } from '#server/commands/audit.ts'
 import { CommandError } from '#server/commands/command-error.ts'
@@ -11,8 +12,6 @@ import { entrantImport, importRow } from '#server/store/schema/entrant.ts'
 import { RowChannel } from './row-channel.ts'
 import { type ReadEntrantCsvResult, readEntrantCsv } from './read-entrant-csv.ts'
 
-/** Largest file, in bytes. */
-export const MAX_UPLOAD = 200 * 1024 * 1024
 const KEPT_ERRORS = 200
 const PROGRESS_EVERY_MS = 500
 const COLUMNS = ['import_id', 'row', 'name', 'tickets', 'label', 'email', 'phone', 'numbers', 'ranges'] as const
@@ -157,7 +156,7 @@ async function* limited(stream: AsyncIterable<Uint8Array>): AsyncGenerator<Uint8
   let size = 0
   for await (const chunk of stream) {
     size += chunk.length
-    if (size > MAX_UPLOAD) {
+    if (size > MAX_FILE_BYTES) {
       throw new CommandError('invalid', 'The file is larger than 200 MB. Split it and import the parts one by one.', [
         { field: 'file', message: 'The file is larger than 200 MB. Split it and import the parts one by one.' },
       ])

@@ -1,10 +1,10 @@
+import type { Readable } from 'node:stream'
 import type { Request, RequestHandler } from 'express'
 import multer from 'multer'
+import { MAX_FILE_BYTES } from '#shared/entrants/file-limit.ts'
 import type { Upload } from '#server/http/endpoints/context.ts'
 import { problem } from '#server/http/problems.ts'
 
-/** The largest file of entrants, in bytes: about three million rows. */
-export const MAX_UPLOAD = 200 * 1000 * 1000
 /** What a multipart frame adds at most. */
 const FRAME = 64 * 1000
 
@@ -27,25 +27,31 @@ const answers = new WeakMap<Request, unknown>()
  */
 export function receiveUpload(
   receive: (request: Request, upload: Upload) => Promise<unknown>,
-  maxBytes = MAX_UPLOAD,
+  maxBytes = MAX_FILE_BYTES,
 ): RequestHandler[] {
   const storage: multer.StorageEngine = {
     _handleFile(request, file, done) {
       const broken = new AbortController()
+      const bytes = whole(file.stream, broken)
+      // Whoever has read enough leaves the rest: it runs out, so that its sender reads the answer.
+      const runOut = async () => {
+        await bytes.return(undefined).catch(() => undefined)
+        file.stream.resume()
+      }
       const upload: Upload = {
         fileName: file.originalname.slice(-200),
         bytesTotal: Number(request.headers['content-length'] ?? 0) || 0,
-        bytes: whole(file.stream, broken),
+        bytes,
         signal: broken.signal,
       }
       receive(request, upload).then(
         (answer) => {
           answers.set(request, answer)
+          void runOut()
           done(null, {})
         },
         (error: unknown) => {
-          // Let the rest of the request run out, so that its sender reads the answer.
-          file.stream.resume()
+          void runOut()
           done(error)
         },
       )
@@ -76,9 +82,10 @@ export function receiveUpload(
 
 export const uploadAnswer = (request: Request): unknown => answers.get(request)
 
-async function* whole(stream: AsyncIterable<Uint8Array>, broken: AbortController): AsyncGenerator<Uint8Array> {
+async function* whole(stream: Readable, broken: AbortController): AsyncGenerator<Uint8Array> {
   try {
-    for await (const chunk of stream) yield chunk
+    // A reader that stops at a fault must not destroy the stream: the parser takes that for an upload that broke off.
+    for await (const chunk of stream.iterator({ destroyOnReturn: false })) yield chunk as Uint8Array
     // The parser cuts a file at the limit and ends it as if that were all.
     if ((stream as { truncated?: boolean }).truncated) throw tooLarge()
   } catch (error) {

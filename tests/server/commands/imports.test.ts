@@ -7,12 +7,13 @@ import { applyImport } from '#server/commands/entrants/apply-import.ts'
 import { discardImport } from '#server/commands/entrants/discard-import.ts'
 import { removeEntrant } from '#server/commands/entrants/remove-entrant.ts'
 import { updateEntrant } from '#server/commands/entrants/update-entrant.ts'
-import { MAX_UPLOAD, uploadImport } from '#server/commands/entrants/upload-import.ts'
+import { uploadImport } from '#server/commands/entrants/upload-import.ts'
 import { listEntrants } from '#server/store/queries/entrants.ts'
 import { getImport } from '#server/store/queries/imports.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { entrantImport, entrantPerson, importRow } from '#server/store/schema/entrant.ts'
 import { auditDetail, auditEvent } from '#server/store/schema/record.ts'
+import { MAX_FILE_BYTES } from '#shared/entrants/file-limit.ts'
 import { csv, importCsv, makeClosed, makeDraft, makeOffice, makeOpen, type Office } from '#tests/support/draws.ts'
 import { startTestSite, type TestSite } from '#tests/support/site.ts'
 
@@ -146,7 +147,7 @@ describe('an import', () => {
     const line = Buffer.from(`${'Ada Quill,1,,'.padEnd(60_000, ' ')}\n`)
     async function* endless(): AsyncGenerator<Uint8Array> {
       yield Buffer.from('name,tickets,email,numbers\n')
-      for (let sent = 0; sent < MAX_UPLOAD + line.length; sent += line.length) yield line
+      for (let sent = 0; sent < MAX_FILE_BYTES + line.length; sent += line.length) yield line
     }
     const upload = uploadImport(site.services, office.promoter, {
       draw: id,

@@ -62,6 +62,31 @@ describe('importing entrants', () => {
     expect((await client.post(`/api/office/draws/${draw}/imports/${read.body.id}/apply`)).status).toBe(409)
   })
 
+  it.each([
+    [
+      'of another encoding',
+      Buffer.from('name,tickets\nJos\xe9 Lind,3\n', 'latin1'),
+      /^Row 2: here the file is no longer UTF-8/,
+    ],
+    [
+      'of 16-bit text',
+      Buffer.from('\ufeffname,tickets\nTove,3\n', 'utf16le'),
+      /^Row 1: here the file is no longer UTF-8/,
+    ],
+    [
+      'with a quotation mark that never closes, far before its end',
+      Buffer.from(`name,tickets\nOle,1\n"Tove,3\n${'Ole Brandt,2\n'.repeat(50_000)}`),
+      /^Row 3: the row is longer than 65,536 characters. A quotation mark/,
+    ],
+  ])('answers a file %s with its row, and reads no further', async (_what, bytes, words) => {
+    const before = await stored()
+    const read = await client.post(`/api/office/draws/${draw}/imports`).attach('file', bytes, 'stubs.csv')
+    expect(read.status).toBe(200)
+    expect(read.body).toMatchObject({ state: 'faulty', errorCount: 1 })
+    expect(read.body.errors[0].message).toMatch(words)
+    expect(await stored()).toEqual(before)
+  })
+
   it('stores nothing of half an upload, and says so where its progress is asked for', async () => {
     const before = await stored()
     const socket = connect((server.address() as AddressInfo).port, '127.0.0.1')

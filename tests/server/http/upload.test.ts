@@ -130,6 +130,18 @@ describe('receiveUpload', () => {
     expect((await request(app).post('/').send({ file: 'x' })).status).toBe(415)
   })
 
+  it.each([10, 60_000])('answers a reader that has seen enough after the first piece of %i bytes', async (length) => {
+    const app = express()
+    const receive = async (_request: unknown, upload: Upload) => {
+      for await (const chunk of upload.bytes) if (chunk.length > 0) break
+      return { enough: true, broken: upload.signal.aborted }
+    }
+    app.post('/', ...receiveUpload(receive, LIMIT), (asked, response) => void response.json(uploadAnswer(asked)))
+    app.use(errorHandler(createProblemOf(() => undefined)))
+    const answer = await request(app).post('/').attach('file', Buffer.alloc(length, 'a'), 'a.csv')
+    expect([answer.status, answer.body]).toEqual([200, { enough: true, broken: false }])
+  })
+
   it('passes on what its reader throws', async () => {
     const app = express()
     app.post('/', ...receiveUpload(() => Promise.reject(new URIError('no')), LIMIT))

@@ -2,10 +2,10 @@ import { readFileSync } from 'node:fs'
 import { Readable } from 'node:stream'
 import { describe, expect, it } from 'vitest'
 import { readEntrantCsv } from '#server/commands/entrants/read-entrant-csv.ts'
-import { MAX_UPLOAD } from '#server/http/endpoints/upload.ts'
+import { MAX_FILE_BYTES } from '#shared/entrants/file-limit.ts'
 import { ENTRANT_COLUMNS, type EntrantColumn } from '#shared/entrants/entrant-header.ts'
 import type { EntrantRow } from '#shared/entrants/entrant-csv.ts'
-import { fileProblem, MAX_BYTES } from '#src/features/office/import/file-checks.ts'
+import { fileProblem } from '#src/features/office/import/file-checks.ts'
 import { importWords, likeness, readShare, rowList } from '#src/features/office/import/import-words.ts'
 import { groupProblems } from '#src/features/office/import/problem-groups.ts'
 import { COLUMNS, SAMPLE, SAMPLE_PATH } from '#src/features/office/import/sample.ts'
@@ -39,9 +39,9 @@ describe('the example of a sheet', () => {
 
 describe('fileProblem', () => {
   it('takes what the server takes, to the byte', () => {
-    expect(MAX_BYTES).toBe(MAX_UPLOAD)
-    expect(fileProblem({ name: 'list.csv', size: MAX_BYTES })).toBeNull()
-    expect(fileProblem({ name: 'list.csv', size: MAX_BYTES + 1 })).toMatch(/at most 200 MB. Split it/)
+    expect(MAX_FILE_BYTES).toBe(200_000_000)
+    expect(fileProblem({ name: 'list.csv', size: MAX_FILE_BYTES })).toBeNull()
+    expect(fileProblem({ name: 'list.csv', size: MAX_FILE_BYTES + 1 })).toMatch(/at most 200 MB. Split it/)
   })
   it('knows an empty file and a spreadsheet', () => {
     expect(fileProblem({ name: 'list.csv', size: 0 })).toMatch(/empty/)

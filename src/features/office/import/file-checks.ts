@@ -1,7 +1,5 @@
+import { MAX_FILE_BYTES } from '#shared/entrants/file-limit.ts'
 import { formatBytes } from '#src/ui/format-number.ts'
-
-/** Largest file that the site takes, in bytes. */
-export const MAX_BYTES = 200_000_000
 
 /** What is wrong with a chosen file before it is sent, and what to do; null where nothing can be seen yet. */
 export function fileProblem(file: Pick<File, 'name' | 'size'>): string | null {
@@ -12,7 +10,7 @@ export function fileProblem(file: Pick<File, 'name' | 'size'>): string | null {
     return 'This is no list in CSV. Save the list from your spreadsheet as “CSV UTF-8”, and choose that file.'
   }
   if (file.size === 0) return 'This file is empty. Save it again from your spreadsheet, and choose it once more.'
-  if (file.size > MAX_BYTES) {
+  if (file.size > MAX_FILE_BYTES) {
     return `This file has ${formatBytes(file.size)}; the site takes at most 200 MB. Split it into several and bring them in one after another.`
   }
   return null
