@@ -58,6 +58,8 @@ export function drawValues(input: DrawInput, timeZone: string) {
   }
 }
 
+const MAX_SLUG = 60
+
 /** An address for the web out of a title: letters without accents, digits and hyphens. */
 export function slugFrom(title: string): string {
   const plain = title
@@ -66,7 +68,9 @@ export function slugFrom(title: string): string {
     .toLowerCase()
     .replace(/[^a-z0-9]+/g, '-')
     .replace(/^-+|-+$/g, '')
-    .slice(0, 60)
-    .replace(/-+$/, '')
-  return plain === '' ? 'draw' : plain
+  if (plain === '') return 'draw'
+  if (plain.length <= MAX_SLUG) return plain
+  // A long title ends with a whole word.
+  const end = plain.lastIndexOf('-', MAX_SLUG)
+  return plain.slice(0, end > MAX_SLUG / 2 ? end : MAX_SLUG)
 }

@@ -58,6 +58,8 @@ export async function getSealSummary(
   }
 }
 
+const figure = (count: number) => count.toLocaleString('en-GB')
+
 function cautionsOf(
   entrants: number,
   tickets: number,
@@ -70,12 +72,14 @@ function cautionsOf(
   const without = entrants - withEmail
   if (without > 0) {
     cautions.push(
-      `${without} of ${entrants} entrants have no e-mail address: they get no receipt by mail. Tell them by letter or telephone.`,
+      `${figure(without)} of ${figure(entrants)} entrants have no e-mail address: they get no receipt by mail. Tell them by letter or telephone.`,
     )
   }
   const most = rule === 'one-prize-each' ? entrants : tickets
   if (entrants > 0 && picks > most) {
-    cautions.push(`There are more prizes and reserves (${picks}) than can be drawn (${most}): the draw will end early.`)
+    cautions.push(
+      `There are more prizes and reserves (${figure(picks)}) than can be drawn (${figure(most)}): the draw will end early.`,
+    )
   }
   if (network === 'development') {
     cautions.push(

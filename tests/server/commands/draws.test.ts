@@ -17,6 +17,7 @@ import { jobHandlers } from '#server/jobs/handlers.ts'
 import { readSealedLeaves } from '#server/store/queries/sealed-leaves.ts'
 import { sealInForce, sealOf, sealsOf } from '#server/store/queries/seals.ts'
 import { draw, prize } from '#server/store/schema/draw.ts'
+import { slugFrom } from '#server/commands/draws/draw-values.ts'
 import { type DrawFacts, problemsOfSealing } from '#server/store/draw-problems.ts'
 import { auditDetail, auditEvent, logEvent, logNote } from '#server/store/schema/record.ts'
 import { sealedLeafPerson, sealSecret } from '#server/store/schema/seal.ts'
@@ -64,8 +65,8 @@ const local = (date: Date) => localFromInstant(date, 'Europe/London')
 const inHours = (hours: number) => new Date(clock.now().getTime() + hours * 3600_000)
 const jobs = async (drawId: string, name: string) =>
   (
-    await site.services.pool.query<{ state: string; start_after: Date }>(
-      `select state, start_after from pgboss.job where name = $1 and data ->> 'draw' = $2 order by created_on`,
+    await site.services.pool.query<{ state: string; start_after: Date; about: string | null }>(
+      `select state, start_after, data ->> 'about' as about from pgboss.job where name = $1 and data ->> 'draw' = $2 order by created_on`,
       [name, drawId],
     )
   ).rows
@@ -119,6 +120,17 @@ describe('a draft', () => {
       before: { title: 'Winter hamper draw' },
       after: { title: 'Summer hamper draw' },
     })
+  })
+  it.each([
+    ['Großes Ütliberg-Fest, 2. Ziehung', 'gro-es-utliberg-fest-2-ziehung'],
+    [
+      'The Upper Valley and Lower Moor Grand Midwinter Prize Draw for the Hall Roof',
+      'the-upper-valley-and-lower-moor-grand-midwinter-prize-draw',
+    ],
+    ['x'.repeat(80), 'x'.repeat(60)],
+    ['…', 'draw'],
+  ])('has an address made of its title %s, in whole words', (title, slug) => {
+    expect(slugFrom(title)).toBe(slug)
   })
   it('keeps the codes of its prizes while they are moved about, and never gives one twice', async () => {
     const id = await makeDraft(site.services, office)
@@ -260,7 +272,7 @@ describe('sealing', () => {
       numbers: '1-5',
     })
     expect((await jobs(id, 'settle')).map(({ start_after }) => start_after)).toEqual([row.beaconRoundAt])
-    expect(await jobs(id, 'prepare-mail')).toHaveLength(1)
+    expect((await jobs(id, 'prepare-mail')).filter(({ about }) => about === 'seal')).toHaveLength(1)
     const [logged] = await services.db
       .select()
       .from(logEvent)
@@ -404,7 +416,7 @@ describe('cancelling', () => {
       .from(sealSecret)
       .where(eq(sealSecret.sealId, seal?.id ?? 0))
     expect(secret?.seed).toBeNull()
-    expect((await jobs(id, 'prepare-mail')).length).toBe(2)
+    expect((await jobs(id, 'prepare-mail')).filter(({ about }) => about === 'notice')).toHaveLength(1)
     const again = cancelDraw(site.services, office.promoter, {
       draw: id,
       version: version + 1,
