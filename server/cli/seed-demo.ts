@@ -1,12 +1,14 @@
 import { renameSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
+import { asc, eq } from 'drizzle-orm'
 import { settableClock } from '#server/adapters/clock/clock.ts'
 import { DEMO_SIGN_INS, makeDemoPeople } from '#server/cli/demo/demo-people.ts'
 import { makeDemoDraws } from '#server/cli/demo/demo-draws.ts'
 import { ConfigError } from '#server/config/config-error.ts'
 import { type Config, loadConfig } from '#server/config/config.ts'
 import { servicesNotLocal } from '#server/config/local-services.ts'
-import { createServices } from '#server/services.ts'
+import { createServices, type Services } from '#server/services.ts'
+import { draw } from '#server/store/schema/draw.ts'
 
 /** Makes the demo data that is missing; on a second run there is nothing to do. Refuses where any service is real. */
 export async function seedDemo(config: Config, now: () => Date = () => new Date()): Promise<void> {
@@ -27,10 +29,27 @@ export async function seedDemo(config: Config, now: () => Date = () => new Date(
     const offices = await makeDemoPeople(services)
     await makeDemoDraws(services, clock, offices, now)
   } finally {
+    keep(config, 'demo-next-draw.json', await nextDraw(services))
     await services.close()
   }
-  const path = join(config.data, 'demo-sign-ins.json')
-  writeFileSync(`${path}.new`, `${JSON.stringify(DEMO_SIGN_INS, null, 2)}\n`, { mode: 0o600 })
+  keep(config, 'demo-sign-ins.json', DEMO_SIGN_INS)
+}
+
+/** The sealed draw that is drawn first: npm start tells a newcomer where to watch it. */
+async function nextDraw({ db }: Pick<Services, 'db'>) {
+  const [next] = await db
+    .select({ title: draw.title, slug: draw.slug, drawAt: draw.drawAt })
+    .from(draw)
+    .where(eq(draw.state, 'sealed'))
+    .orderBy(asc(draw.drawAt))
+    .limit(1)
+  return next ?? null
+}
+
+/** Writes a file of the data folder for npm start to read, whole or not at all. */
+function keep(config: Config, name: string, value: unknown): void {
+  const path = join(config.data, name)
+  writeFileSync(`${path}.new`, `${JSON.stringify(value, null, 2)}\n`, { mode: 0o600 })
   renameSync(`${path}.new`, path)
 }
 

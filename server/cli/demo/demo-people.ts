@@ -24,6 +24,7 @@ export interface DemoSignIn {
 export interface DemoOffice {
   readonly slug: string
   readonly name: string
+  readonly address: string
   readonly timeZone: string
   readonly promoter: { readonly id: string; readonly name: string }
   readonly organiser: { readonly id: string; readonly name: string }
@@ -136,6 +137,7 @@ async function demoOffice(services: WithPasswords, administrator: Someone, plan:
   return {
     slug,
     name: owner.name,
+    address: owner.address,
     timeZone: owner.timeZone,
     promoter: await member('promoter'),
     organiser: await member('organiser'),

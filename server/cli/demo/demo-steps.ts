@@ -62,7 +62,7 @@ export class DemoSteps {
         slug: plan.slug,
         goodCause: plan.goodCause,
         promoterName: office.promoter.name,
-        promoterAddress: `${office.name}, at its postal address`,
+        promoterAddress: office.address,
         licence: null,
         ticketPrice: { minor: plan.ticketPriceMinor, currency: this.currency },
         minimumAge: 16,
@@ -110,7 +110,7 @@ export class DemoSteps {
       draw: id,
       name: this.office.witness.name,
       role: 'Neighbour, asked as a witness',
-      connection: 'None: holds no ticket and is no member.',
+      connection: 'none; holds no ticket and is no member.',
       person: this.office.witness.id,
     })
   }

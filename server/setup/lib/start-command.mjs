@@ -130,7 +130,15 @@ async function setUpAndRun(args, env, say, held, interrupted) {
     await stack.startFakes()
     await seedOnce(data, isNew, environment, say)
     await stack.startWorkerAndSite()
-    say(welcome({ data: relative(process.cwd(), data) || '.', ports, signIns: readSignIns(data) }))
+    say(
+      welcome({
+        data: relative(process.cwd(), data) || '.',
+        ports,
+        signIns: readKept(data, 'demo-sign-ins.json') ?? [],
+        nextDraw: readKept(data, 'demo-next-draw.json'),
+        now: new Date(),
+      }),
+    )
     return databaseEnds(cluster.place)
   }
   await Promise.race([serving(), stack.failure, interrupted]).catch((error) => {
@@ -186,10 +194,10 @@ function databaseEnds(place) {
   })
 }
 
-/** @param {string} data @returns {import('./welcome.mjs').SignIn[]} */
-function readSignIns(data) {
-  const file = join(data, 'demo-sign-ins.json')
-  return existsSync(file) ? JSON.parse(readFileSync(file, 'utf8')) : []
+/** What the making of the demo data left in the data folder; null where it made none. @param {string} data @param {string} name */
+function readKept(data, name) {
+  const file = join(data, name)
+  return existsSync(file) ? JSON.parse(readFileSync(file, 'utf8')) : null
 }
 
 /** @param {string} place */

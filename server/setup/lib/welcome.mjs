@@ -3,20 +3,35 @@ import { siteAddress } from './environment.mjs'
 
 /** @typedef {{ role: string, name: string, email: string, password: string, organisation: string | null }} SignIn */
 
+/** @typedef {{ title: string, slug: string, drawAt: string }} NextDraw */
+
+/** Less than this ahead, a demo draw is worth waiting for, in milliseconds. */
+const WORTH_WAITING = 10 * 60_000
+
 /**
  * What npm start prints once everything runs.
  * @param {object} options
  * @param {string} options.data folder, as the reader would type it
  * @param {import('./ports.mjs').Ports} options.ports
  * @param {readonly SignIn[]} options.signIns
+ * @param {NextDraw | null} options.nextDraw the demo draw that was to be drawn first
+ * @param {Date} options.now
  */
-export function welcome({ data, ports, signIns }) {
+export function welcome({ data, ports, signIns, nextDraw, now }) {
   const lines = [
     '',
     `Evenpenny runs. Open  ${siteAddress(ports)}/`,
     `Its mail is read at   http://localhost:${ports.mailPage}/  (no mail leaves this machine)`,
     `Logs and data are in  ${data}`,
   ]
+  const ahead = nextDraw ? Date.parse(nextDraw.drawAt) - now.getTime() : 0
+  if (nextDraw && ahead > 0 && ahead < WORTH_WAITING) {
+    lines.push(
+      '',
+      `A demo draw is drawn by itself in ${inMinutes(ahead)}: ${nextDraw.title}. Watch it at`,
+      `  ${siteAddress(ports)}/draws/${nextDraw.slug}`,
+    )
+  }
   if (signIns.length > 0) {
     const rows = signIns.map(({ role, name, email, password, organisation }) => [
       role,
@@ -29,6 +44,13 @@ export function welcome({ data, ports, signIns }) {
   }
   lines.push('', 'Press Ctrl-C to stop.')
   return lines.join('\n')
+}
+
+/** @param {number} ms */
+function inMinutes(ms) {
+  const minutes = Math.round(ms / 60_000)
+  if (minutes === 0) return 'less than a minute'
+  return minutes === 1 ? 'about a minute' : `about ${minutes} minutes`
 }
 
 /** @param {readonly string[][]} rows */

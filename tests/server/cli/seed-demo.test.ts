@@ -26,6 +26,11 @@ describe('seedDemo', () => {
     const now = Date.now()
     const soon = rows.filter((row) => row.state === 'sealed' && row.drawAt.getTime() - now < 240_000)
     expect(soon).toHaveLength(1)
+    expect(JSON.parse(readFileSync(join(site.config.data, 'demo-next-draw.json'), 'utf8'))).toEqual({
+      title: soon[0]?.title,
+      slug: soon[0]?.slug,
+      drawAt: soon[0]?.drawAt.toISOString(),
+    })
     expect((soon[0]?.drawAt.getTime() ?? 0) - (soon[0]?.sealedAt?.getTime() ?? 0)).toBeGreaterThanOrEqual(120_000)
   })
   it('makes nothing twice', async () => {

@@ -77,11 +77,29 @@ describe('welcome', () => {
       { role: 'promoter', name: 'A', email: 'a@one.example', password: 'pw', organisation: 'One' },
       { role: 'administrator', name: 'B', email: 'b@site.example', password: 'longer', organisation: null },
     ]
-    const text = welcome({ data: '.data', ports, signIns })
+    const now = new Date('2026-05-01T10:00:00Z')
+    const text = welcome({ data: '.data', ports, signIns, nextDraw: null, now })
     expect(text).toContain('http://localhost:1/')
     expect(text).toContain('http://localhost:5/')
     expect(text).toContain('  promoter       a@one.example   pw        A     One\n')
-    expect(welcome({ data: '.data', ports, signIns: [] })).not.toContain('sign-ins')
+    expect(text).not.toContain('Watch it')
+    expect(welcome({ data: '.data', ports, signIns: [], nextDraw: null, now })).not.toContain('sign-ins')
+  })
+  it('sends a newcomer to the demo draw while it is still to come, and not to one that is past or far', () => {
+    const said = (drawAt: string) =>
+      welcome({
+        data: '.data',
+        ports,
+        signIns: [],
+        nextDraw: { title: 'Kettle draw', slug: 'kettle-draw', drawAt },
+        now: new Date('2026-05-01T10:00:00Z'),
+      })
+    expect(said('2026-05-01T10:02:40Z')).toContain(
+      'A demo draw is drawn by itself in about 3 minutes: Kettle draw. Watch it at\n  http://localhost:1/draws/kettle-draw\n',
+    )
+    expect(said('2026-05-01T10:00:20Z')).toContain('in less than a minute')
+    expect(said('2026-05-01T09:59:59Z')).not.toContain('Watch it')
+    expect(said('2026-05-01T10:10:00Z')).not.toContain('Watch it')
   })
 })
 

@@ -180,7 +180,12 @@ export function openDraw(over: Partial<DrawPage> = {}): DrawPage {
     drawAt: '2026-06-19T18:30:00Z',
     drawnAt: null,
     witnesses: [
-      { name: 'Dr Anselm Roe', role: 'clerk to Sennow parish', connection: 'No part in the trust.', statements: [] },
+      {
+        name: 'Dr Anselm Roe',
+        role: 'clerk to Sennow parish',
+        connection: 'none, no part in the trust.',
+        statements: [],
+      },
     ],
     seal: null,
     replacedSeals: [],

@@ -193,7 +193,7 @@ export function WitnessesPart({ draw }: { readonly draw: DrawPage }) {
         {draw.witnesses.map((witness) => (
           <li key={witness.name}>
             <p>
-              <b>{witness.name}</b>, {witness.role}. {witness.connection}
+              <b>{witness.name}</b>, {witness.role}. Connection with the organisation: {witness.connection}
             </p>
             {witness.statements.map((statement) => (
               <div className="note" key={statement.digest}>

@@ -28,7 +28,7 @@ export function DrawTitle({ draw }: { readonly draw: DrawPage }) {
                 draw.witnesses.length === 1 ? 'Witness' : 'Witnesses',
                 draw.witnesses.map((witness) => (
                   <span className="block" key={witness.name}>
-                    {witness.name}, {witness.role}. {witness.connection}
+                    {witness.name}, {witness.role}. Connection with the organisation: {witness.connection}
                   </span>
                 )),
               ]

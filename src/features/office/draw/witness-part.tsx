@@ -28,7 +28,7 @@ export function WitnessPart({ draw }: { readonly draw: OfficeDraw }) {
               <span className="at">Witness</span>
               <div>
                 <p>
-                  <b>{witness.name}</b>, {witness.role}. {witness.connection}
+                  <b>{witness.name}</b>, {witness.role}. Connection with the organisation: {witness.connection}
                   {witness.person ? '' : ' Signs on paper: has no account.'}
                 </p>
                 <Statements draw={draw} name={witness.name} />
