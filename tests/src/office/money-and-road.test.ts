@@ -100,6 +100,8 @@ describe('drawInterval', () => {
   })
   it('looks often while a job runs or the draw is near, and never once all is settled', () => {
     expect(drawInterval(officeDraw({ jobs: [job('running')] }))).toBe(2_000)
+    expect(drawInterval(officeDraw({ jobs: [job('waiting')] }))).toBe(2_000)
+    expect(drawInterval(officeDraw({ jobs: [{ ...job('waiting'), at: '2026-09-20T10:00:01Z' }] }))).toBe(15_000)
     expect(drawInterval(officeDraw({ state: 'sealed', drawAt: '2026-09-20T10:00:59Z' }))).toBe(2_000)
     expect(drawInterval(officeDraw({ state: 'sealed', drawAt: '2026-09-20T10:01:01Z' }))).toBe(15_000)
     expect(drawInterval(officeDraw({ state: 'drawn' }))).toBe(false)

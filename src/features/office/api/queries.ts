@@ -35,8 +35,11 @@ export const officeDrawQuery = (api: ApiClient, draw: string) =>
 
 /** How often the office asks again: often while a job runs or a result is due, seldom otherwise. */
 export function drawInterval(draw: OfficeDraw): number | false {
-  if (draw.jobs.some((job) => job.state === 'running')) return BUSY
-  if (draw.state === 'sealed' && Date.parse(draw.drawAt) - Date.parse(draw.now) < 60_000) return BUSY
+  const now = Date.parse(draw.now)
+  // A job whose time has come begins within a second or two.
+  if (draw.jobs.some(({ state, at }) => state === 'running' || (state === 'waiting' && Date.parse(at) <= now)))
+    return BUSY
+  if (draw.state === 'sealed' && Date.parse(draw.drawAt) - now < 60_000) return BUSY
   if (draw.jobs.some((job) => job.state === 'waiting')) return SLOW
   if (draw.mail.seal.queued + draw.mail.result.queued + draw.mail.notice.queued > 0) return BUSY
   return draw.state === 'drawn' || draw.state === 'cancelled' || draw.state === 'failed' ? false : SLOW

@@ -4,9 +4,12 @@ import { useSubmit } from '#src/lib/use-submit.ts'
 import { Button } from '#src/ui/button.tsx'
 import { ErrorSummary } from '#src/ui/error-summary.tsx'
 import { TextArea, TextField } from '#src/ui/field.tsx'
+import { formatNumber } from '#src/ui/format-number.ts'
 import { zoneName } from '#src/ui/format-time.ts'
+import { Notice } from '#src/ui/notice.tsx'
 import { Part } from '#src/ui/page.tsx'
 import { useKeepDraw } from '../api/queries.ts'
+import { isBeingSealed } from './sealing.ts'
 
 type Action = 'close' | 'reopen' | 'postpone' | 'cancel'
 
@@ -23,6 +26,18 @@ export function RunPart({ draw }: { readonly draw: OfficeDraw }) {
     ] as const
   ).filter(([, allowed]) => allowed)
   if (actions.length === 0) return null
+  if (isBeingSealed(draw)) {
+    return (
+      <Part title="Change its course">
+        <Notice title={draw.state === 'sealed' ? 'The new seal is being made' : 'The list is being sealed'}>
+          <p role="status">
+            A long list takes a moment: a commitment is made for each of its {formatNumber(draw.counts.entrants)}{' '}
+            entrants. This page shows the seal as soon as it stands; you can leave it meanwhile.
+          </p>
+        </Notice>
+      </Part>
+    )
+  }
   return (
     <Part title="Change its course" note="Only the promoter. Each is public, with its reason and time.">
       <p className="buttons">

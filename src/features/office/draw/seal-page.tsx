@@ -20,6 +20,7 @@ import { Failure, Skeleton } from '#src/ui/states.tsx'
 import { sealSummaryQuery, useKeepDraw } from '../api/queries.ts'
 import { useRole } from '../use-role.ts'
 import { RULE_WORDS } from './draw-fields.tsx'
+import { isBeingSealed } from './sealing.ts'
 import { useDraw } from './use-draw.ts'
 
 type Summary = ResponseOf<typeof getSealSummary>
@@ -34,11 +35,10 @@ export function Component() {
   const draw = useDraw()
   const { data: summary, error, refetch } = useQuery(sealSummaryQuery(api, useParams().draw ?? ''))
   if (draw.sealDigest) return <Sealed draw={draw} digest={draw.sealDigest} />
-  const sealing = draw.jobs.find((job) => job.kind === 'seal' && (job.state === 'running' || job.state === 'waiting'))
   return (
     <>
       <Head title={`Seal: ${draw.title}`} description="What the seal fixes, and its confirmation." />
-      {sealing ? (
+      {isBeingSealed(draw) ? (
         <Part title="The seal">
           <Notice title="The list is being sealed">
             <p role="status">

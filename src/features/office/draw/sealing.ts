@@ -1,0 +1,5 @@
+import type { OfficeDraw } from '#shared/schemas/api/office.ts'
+
+/** Whether the worker is about to make a seal of this draw's list, the first one or one that replaces it. */
+export const isBeingSealed = (draw: Pick<OfficeDraw, 'jobs'>): boolean =>
+  draw.jobs.some(({ kind, state }) => kind === 'seal' && (state === 'running' || state === 'waiting'))
