@@ -1,6 +1,7 @@
 import type { ReactNode } from 'react'
-import { NavLink } from 'react-router'
+import { NavLink, useLocation } from 'react-router'
 import { Mark, Wordmark } from './brand.tsx'
+import { useFocusWhenLost } from './use-focus-when-lost.ts'
 
 export interface MenuItem {
   readonly to: string
@@ -22,6 +23,7 @@ interface PageProps {
 
 /** The sheet: skip link, masthead, main, footer. The menu stands in the footer too, where phones reach it by a link. */
 export function Page({ menu, apart, banner, footer, className, children }: PageProps) {
+  useFocusWhenLost(useLocation().pathname)
   return (
     <div className={`page${className ? ` ${className}` : ''}`}>
       <a className="skip" href="#main">

@@ -187,9 +187,10 @@ describe('the panel of an entrant', () => {
     await act(async () => click('Save what I typed over it'))
     await waitFor(() => expect(screen.queryByLabelText('Tickets')).toBeNull())
     const sent = api.of('updateEntrant').map(({ body }) => body as EntrantRow)
-    expect(sent.map(({ version, tickets }) => [version, tickets])).toEqual([
-      [1, 6],
-      [2, 6],
+    // Their new address was not typed over here, so it stays.
+    expect(sent.map(({ version, tickets, email }) => [version, tickets, email])).toEqual([
+      [1, 6, 'entrant1@sallowbrook.example'],
+      [2, 6, 'new@sallowbrook.example'],
     ])
     expect(document.activeElement).toBe(screen.getByRole('button', { name: 'Change Lowenna Trask' }))
   })
@@ -239,6 +240,7 @@ describe('the panel of an entrant', () => {
     type('Reason', 'Asked for her money back.')
     await act(async () => click('Take out'))
     await screen.findByText('Taken out: Birgit Solberg, 5 tickets.')
+    expect(document.activeElement).not.toBe(document.body)
     expect(api.of('removeEntrant')).toEqual([
       { params: { draw: DRAW_ID, entrant: '3' }, body: { reason: 'Asked for her money back.' } },
     ])

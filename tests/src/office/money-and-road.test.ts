@@ -130,7 +130,12 @@ describe('changesOf', () => {
       of({ value: { minor: 250, currency: 'GBP' }, rule: 'one-prize-each' }, { value: null, rule: 'every-ticket' }),
     ).toEqual([
       { field: 'Value', before: '£2.50', after: null },
-      { field: 'Rule', before: 'One prize each', after: 'Every ticket, every time' },
+      { field: 'Rule', before: 'One prize each', after: 'Every ticket can win once' },
+    ])
+  })
+  it('tells a time typed in the zone of the organisation as it was typed', () => {
+    expect(of({ drawAt: '2026-07-02T17:00' }, { drawAt: '2026-07-02T18:30' })).toEqual([
+      { field: 'Draw time', before: 'Thursday 2 July 2026 at 17:00', after: 'Thursday 2 July 2026 at 18:30' },
     ])
   })
   it('follows prizes by their codes, not by their places', () => {

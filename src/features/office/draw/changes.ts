@@ -23,7 +23,7 @@ const FIELDS: Record<string, string> = {
 
 const VALUES: Record<string, string> = {
   'one-prize-each': 'One prize each',
-  'every-ticket': 'Every ticket, every time',
+  'every-ticket': 'Every ticket can win once',
 }
 
 /** Longest text shown whole; of longer ones the passage around the first difference is. */
@@ -77,6 +77,8 @@ function valueWords(value: unknown, timeZone: string): string | null {
   if (typeof value === 'number') return formatNumber(value)
   if (typeof value === 'string') {
     if (/^\d{4}-\d\d-\d\dT\d\d:\d\d:\d\d(?:\.\d+)?Z$/.test(value)) return formatMoment(value, timeZone)
+    // Typed as the clock on the wall shows it: in its own zone already.
+    if (/^\d{4}-\d\d-\d\dT\d\d:\d\d$/.test(value)) return formatMoment(`${value}:00Z`, 'UTC')
     return VALUES[value] ?? value
   }
   const amount = money.safeParse(value)

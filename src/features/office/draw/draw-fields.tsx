@@ -172,5 +172,9 @@ const FIELD_OF: Record<string, readonly [field: string, message: string]> = {
 /** What the schema says of a field, said of the field as it stands on the page. */
 export function drawFault(fault: { readonly field: string; readonly message: string }) {
   const [field, message] = FIELD_OF[fault.field] ?? [fault.field, fault.message]
+  const time = /^Type a date and a time(.*)$/.exec(message)
+  // Said of two fields at once, it has to say of which.
+  if (time)
+    return { field, message: `Type the date and time of the ${field === 'drawAt' ? 'draw' : 'closing'}${time[1]}` }
   return { field, message }
 }

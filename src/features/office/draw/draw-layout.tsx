@@ -1,5 +1,5 @@
 import { useQuery } from '@tanstack/react-query'
-import { NavLink, Outlet, useParams, type LoaderFunctionArgs } from 'react-router'
+import { NavLink, Outlet, useLocation, useParams, type LoaderFunctionArgs } from 'react-router'
 import type { OfficeDraw } from '#shared/schemas/api/office.ts'
 import { useApp } from '#src/lib/app-context.ts'
 import { load } from '#src/lib/loading.ts'
@@ -10,8 +10,9 @@ import { Link } from '#src/ui/link.tsx'
 import { Title } from '#src/ui/page.tsx'
 import { StateTicket } from '#src/ui/state-ticket.tsx'
 import { Failure, Skeleton } from '#src/ui/states.tsx'
+import { useFocusWhenLost } from '#src/ui/use-focus-when-lost.ts'
 import { officeDrawQuery } from '../api/queries.ts'
-import { drawPath, drawsPath } from '../paths.ts'
+import { drawPath, drawsPath, type Step } from '../paths.ts'
 import { useRole } from '../use-role.ts'
 import { roadOf, type Stage } from './road.ts'
 
@@ -25,6 +26,7 @@ export function Component() {
   const { api } = useApp()
   const { draw: id = '', organisation = '' } = useParams()
   const { data: draw, error, refetch } = useQuery(officeDrawQuery(api, id))
+  useFocusWhenLost(`${id} ${draw?.state}`)
   if (!draw) {
     return (
       <Title title="Draw">
@@ -95,6 +97,11 @@ const MARK_WORDS: Record<Stage['mark'], string> = { done: ', done', now: ', bein
 
 function Road({ draw, organisation }: { readonly draw: OfficeDraw; readonly organisation: string }) {
   const witness = useRole() === 'witness'
+  const { pathname } = useLocation()
+  const isCurrent = (step: Step) =>
+    pathname === drawPath(organisation, draw.id, step) ||
+    // Bringing in a sheet is work on the list of entrants.
+    (step === 'entrants' && pathname.startsWith(drawPath(organisation, draw.id, 'import')))
   // The draw itself comes by itself; and a witness sees nobody's name, address or number.
   const linked = (step: Stage['step']) => step !== '' && !(witness && (step === 'entrants' || step === 'seal'))
   return (
@@ -108,9 +115,12 @@ function Road({ draw, organisation }: { readonly draw: OfficeDraw; readonly orga
         {roadOf(draw).map((stage) => (
           <li key={stage.step} className={stage.mark}>
             {linked(stage.step) ? (
-              <NavLink to={drawPath(organisation, draw.id, stage.step)} end>
+              <Link
+                to={drawPath(organisation, draw.id, stage.step)}
+                aria-current={isCurrent(stage.step) ? 'page' : undefined}
+              >
                 {stage.title}
-              </NavLink>
+              </Link>
             ) : (
               stage.title
             )}

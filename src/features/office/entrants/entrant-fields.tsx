@@ -15,6 +15,24 @@ export function entrantFrom(data: FormData): z.input<typeof entrantInput> {
   }
 }
 
+/** `current` with what was typed differently from `base`: nobody's change to another field is undone. */
+export function typedOver(
+  current: EntrantRow,
+  base: EntrantRow,
+  typed: z.input<typeof entrantInput>,
+): z.input<typeof entrantInput> {
+  const kept = <Field extends keyof typeof typed>(field: Field): (typeof typed)[Field] =>
+    (typed[field] ?? '') === (base[field] ?? '') ? current[field] : typed[field]
+  return {
+    name: kept('name'),
+    tickets: kept('tickets'),
+    label: kept('label'),
+    email: kept('email'),
+    phone: kept('phone'),
+    numbers: kept('numbers'),
+  }
+}
+
 /** A whole number as typed, with or without marks between thousands; NaN for anything else. */
 export function wholeNumber(text: string): number {
   return /^(?:\d+|\d{1,3}(?:[, ]\d{3})+)$/.test(text) ? Number(text.replace(/[, ]/g, '')) : Number.NaN

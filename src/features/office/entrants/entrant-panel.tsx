@@ -11,7 +11,7 @@ import { Notice } from '#src/ui/notice.tsx'
 import { Facts } from '#src/ui/page.tsx'
 import { Time } from '#src/ui/time.tsx'
 import { entrantsQuery } from '../api/queries.ts'
-import { EntrantFields, entrantFrom } from './entrant-fields.tsx'
+import { EntrantFields, entrantFrom, typedOver } from './entrant-fields.tsx'
 
 interface EntrantPanelProps {
   readonly draw: string
@@ -105,10 +105,14 @@ function ChangeForm({ draw, opened, hidden, onTyped, onClose, onTakeOut }: Chang
   useEffect(() => {
     box.current?.querySelector<HTMLInputElement>('#name')?.focus()
   }, [base])
-  const send = (version: number) => {
+  /** With `over`, what was not typed here stays as the other person left it. */
+  const send = (over?: EntrantRow) => {
     if (!box.current) return
     const values = entrantFrom(new FormData(box.current))
-    form.submit({ params: { draw, entrant: opened.id }, body: { ...values, version } })
+    form.submit({
+      params: { draw, entrant: opened.id },
+      body: { ...(over ? typedOver(over, base, values) : values), version: (over ?? base).version },
+    })
   }
   return (
     <form
@@ -122,7 +126,7 @@ function ChangeForm({ draw, opened, hidden, onTyped, onClose, onTakeOut }: Chang
       onChange={() => onTyped(true)}
       onSubmit={(event) => {
         event.preventDefault()
-        send(base.version)
+        send()
       }}
     >
       {form.failed ? (
@@ -136,7 +140,7 @@ function ChangeForm({ draw, opened, hidden, onTyped, onClose, onTakeOut }: Chang
         <div>
           <p>In the list now: {changedWords(base, current)}.</p>
           <p className="buttons mt-unit">
-            <Button small onClick={() => send(current.version)}>
+            <Button small onClick={() => send(current)}>
               Save what I typed over it
             </Button>
             <Button

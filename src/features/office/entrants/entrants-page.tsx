@@ -69,7 +69,8 @@ function List() {
   const [words, setWords] = useState('')
   const [focusOn, setFocusOn] = useState<string | null>(null)
   useEffect(() => {
-    if (focusOn !== null) document.getElementById(focusOn)?.focus()
+    // An entrant who was taken out has left no button behind.
+    if (focusOn !== null) (document.getElementById(focusOn) ?? document.getElementById(ADD_BUTTON))?.focus()
   }, [focusOn])
   const href = (next: Partial<EntrantListSearch>) => entrantsHref(organisation, draw.id, next)
   const mayChange = draw.may.changeEntrants

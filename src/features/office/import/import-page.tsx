@@ -11,6 +11,7 @@ import { Link } from '#src/ui/link.tsx'
 import { Part } from '#src/ui/page.tsx'
 import { Failure, Skeleton } from '#src/ui/states.tsx'
 import { Time } from '#src/ui/time.tsx'
+import { useFocusWhenLost } from '#src/ui/use-focus-when-lost.ts'
 import { importQuery, importsQuery } from '../api/queries.ts'
 import { useDraw } from '../draw/use-draw.ts'
 import { drawPath } from '../paths.ts'
@@ -40,6 +41,7 @@ export function Component() {
   const draw = useDraw()
   const { organisation = '', import: id = '' } = useParams()
   const { data: view, error, refetch } = useQuery(importQuery(api, draw.id, id))
+  useFocusWhenLost(`${id} ${view?.state}`)
   if (!view) {
     return (
       <Part title="File">
