@@ -11,6 +11,11 @@ import { createObjectStore, type ObjectStore } from '#server/adapters/object-sto
 import { createQueue, type Queue } from '#server/adapters/queue/queue.ts'
 import { createSigningKeys, type SigningKeys } from '#server/adapters/signing/signing-keys.ts'
 import type { Config } from '#server/config/config.ts'
+import {
+  createDevelopmentTimestamper,
+  createTimestamper,
+  type Timestamper,
+} from '#server/adapters/timestamp/timestamper.ts'
 import { openStore, type RootDatabase } from '#server/store/database.ts'
 
 /** What commands, queries and jobs know about the site itself. */
@@ -35,6 +40,7 @@ export interface Services {
   readonly mailer: Mailer
   readonly beacon: BeaconReader
   readonly secrets: SecretBox
+  readonly timestamps: Timestamper
   readonly signing: SigningKeys
   readonly sha256: Sha256
   readonly site: Site
@@ -53,11 +59,14 @@ export interface ServiceOptions {
 }
 
 /** The services that a configuration names. Close them at the end of the process. */
+  /** Without it the configured authorities; with a clock of one's own the development authority, at its time. */
+  readonly timestamps?: Timestamper
 export function createServices(config: Config, options: ServiceOptions): OpenServices {
   const clock = options.clock ?? systemClock
   const { pool, db, close } = openStore(config.databaseUrl, {
     name: options.name,
     ...(options.connections ? { connections: options.connections } : {}),
+  const pretended = options.clock !== undefined && config.timestamps.development
   })
   const store = createObjectStore({ ...config.objectStore, clock: systemClock })
   const mailer = createMailer(config.mail)
@@ -73,6 +82,9 @@ export function createServices(config: Config, options: ServiceOptions): OpenSer
     secrets: createSecretBox(config.encryptionKeys),
     signing: createSigningKeys(config.signingKeyPem, config.retiredSigningKeyPems),
     sha256,
+    timestamps:
+      options.timestamps ??
+      (pretended ? createDevelopmentTimestamper(clock) : createTimestamper({ ...config.timestamps, clock })),
     site: {
       origin: config.origin,
       network: config.beacon.network,

@@ -17,6 +17,7 @@ export async function seedDemo(config: Config, now: () => Date = () => new Date(
     objectStoreEndpoint: config.objectStore.endpoint,
     smtpUrl: config.mail.url,
     beaconRelays: config.beacon.relays,
+    timestampUrls: config.timestamps.urls,
     origin: config.origin,
   })
   if (!config.demo || !config.local || real.length > 0 || config.beacon.networkName !== 'development') {
@@ -28,8 +29,8 @@ export async function seedDemo(config: Config, now: () => Date = () => new Date(
   try {
     const offices = await makeDemoPeople(services)
     await makeDemoDraws(services, clock, offices, now)
-  } finally {
     keep(config, 'demo-next-draw.json', await nextDraw(services))
+  } finally {
     await services.close()
   }
   keep(config, 'demo-sign-ins.json', DEMO_SIGN_INS)

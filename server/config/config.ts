@@ -1,5 +1,7 @@
 import { resolve } from 'node:path'
 import { DEVELOPMENT_CHAIN, type Network, QUICKNET } from '#shared/protocol/networks.ts'
+import type { Certificate } from '#shared/timestamp/certificate.ts'
+import { DEVELOPMENT_AUTHORITY_PEM, isDevelopmentAuthority } from '#shared/timestamp/development-authority.ts'
 import { ConfigError } from './config-error.ts'
 import { type EncryptionKeySetting, keyFile, readText } from './keys.ts'
 import { isLoopback, servicesNotLocal } from './local-services.ts'
@@ -45,6 +47,13 @@ export interface Config {
     readonly networkName: 'quicknet' | 'development'
     readonly network: Network
     readonly relays: readonly string[]
+  }
+  /** Timestamp authorities, in the order in which they are asked, and whom the site trusts. */
+  readonly timestamps: {
+    readonly urls: readonly string[]
+    readonly trusted: readonly Certificate[]
+    /** The development authority is trusted, whose key is public. */
+    readonly development: boolean
   }
   /** Where local mails are read, null with a real mail server. */
   readonly mailPageUrl: string | null
@@ -110,6 +119,8 @@ function defaults(env: Environment): Environment {
     EVENPENNY_MAIL_FROM: 'Evenpenny <draws@evenpenny.example>',
     EVENPENNY_BEACON_NETWORK: 'development',
     EVENPENNY_BEACON_RELAYS: `http://127.0.0.1:${env.EVENPENNY_FAKE_BEACON_PORT ?? '4785'}`,
+    EVENPENNY_TIMESTAMP_URLS: `http://127.0.0.1:${env.EVENPENNY_FAKE_TIMESTAMP_PORT ?? '4786'}`,
+    EVENPENNY_TIMESTAMP_CERTIFICATES: DEVELOPMENT_AUTHORITY_PEM,
   }
 }
 
@@ -176,6 +187,11 @@ function assemble(v: Whole): Config {
       network: v.EVENPENNY_BEACON_NETWORK === 'development' ? DEVELOPMENT_CHAIN : QUICKNET,
       relays: v.EVENPENNY_BEACON_RELAYS,
     },
+    timestamps: {
+      urls: v.EVENPENNY_TIMESTAMP_URLS,
+      trusted: v.EVENPENNY_TIMESTAMP_CERTIFICATES,
+      development: v.EVENPENNY_TIMESTAMP_CERTIFICATES.some(isDevelopmentAuthority),
+    },
     jobExpirySeconds: v.EVENPENNY_JOB_EXPIRY_SECONDS,
     crashAt: v.EVENPENNY_CRASH_AT ?? null,
     mailPageUrl: v.EVENPENNY_LOCAL ? `http://127.0.0.1:${v.EVENPENNY_FAKE_MAIL_PAGE_PORT}` : null,
@@ -189,6 +205,7 @@ function unsafeProblems(config: Config): string[] {
     objectStoreEndpoint: config.objectStore.endpoint,
     smtpUrl: config.mail.url,
     beaconRelays: config.beacon.relays,
+    timestampUrls: config.timestamps.urls,
     origin: config.origin,
   })
   const problems: string[] = []
@@ -200,6 +217,10 @@ function unsafeProblems(config: Config): string[] {
     if (config.demo) problems.push(`EVENPENNY_DEMO must be no: demo accounts have known passwords, and ${why}.`)
     if (config.beacon.networkName === 'development')
       problems.push(`EVENPENNY_BEACON_NETWORK must be quicknet: the development chain's secret is public, and ${why}.`)
+    if (config.timestamps.development)
+      problems.push(
+        `EVENPENNY_TIMESTAMP_CERTIFICATES must not hold the development authority's: its key is public, and ${why}.`,
+      )
     if (config.local)
       problems.push(`EVENPENNY_LOCAL must be no: keys from the data folder are for local fakes only, and ${why}.`)
   }

@@ -45,6 +45,13 @@ export function parsePemKeys(text: string): readonly string[] | string {
   return keys
 }
 
+/** Text given as PEM (line feeds may be written as \n), or that of the files named, with commas between them; null if one cannot be read. */
+export function parsePemTexts(text: string): string | null {
+  if (text.includes('-----BEGIN')) return text.replaceAll('\\n', '\n')
+  const texts = text.split(',').map((path) => readText(path.trim()))
+  return texts.includes(undefined) ? null : texts.join('\n')
+}
+
 export function readText(path: string): string | undefined {
   try {
     return readFileSync(path, 'utf8').trim()

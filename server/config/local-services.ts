@@ -5,6 +5,7 @@ export interface ServiceAddresses {
   readonly objectStoreEndpoint: string | undefined
   readonly smtpUrl: string
   readonly beaconRelays: readonly string[]
+  readonly timestampUrls: readonly string[]
   readonly origin: string
 }
 
@@ -14,12 +15,15 @@ export interface ServiceAddresses {
  * real can be reached, by them or by others.
  */
 export function servicesNotLocal(addresses: ServiceAddresses): readonly string[] {
-  const { databaseUrl, objectStoreEndpoint, smtpUrl, beaconRelays, origin } = addresses
+  const { databaseUrl, objectStoreEndpoint, smtpUrl, beaconRelays, timestampUrls, origin } = addresses
   return [
     ...(isLoopbackDatabase(databaseUrl) ? [] : ['the database (EVENPENNY_DATABASE_URL)']),
     ...(isLoopback(objectStoreEndpoint) ? [] : ['the object store (EVENPENNY_S3_ENDPOINT)']),
     ...(isLoopback(smtpUrl) ? [] : ['the mail server (EVENPENNY_SMTP_URL)']),
     ...(beaconRelays.length > 0 && beaconRelays.every(isLoopback) ? [] : ['a beacon relay (EVENPENNY_BEACON_RELAYS)']),
+    ...(timestampUrls.length > 0 && timestampUrls.every(isLoopback)
+      ? []
+      : ['a timestamp authority (EVENPENNY_TIMESTAMP_URLS)']),
     ...(isLoopback(origin) ? [] : ["the site's own address (EVENPENNY_ORIGIN)"]),
   ]
 }

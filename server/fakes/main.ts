@@ -2,11 +2,12 @@ import { join, resolve } from 'node:path'
 import { startBeaconFake } from './beacon/beacon-fake.ts'
 import { startMailFake } from './mail/mail-fake.ts'
 import { startS3Fake } from './s3/server.ts'
+import { startTimestampFake } from './timestamp/timestamp-fake.ts'
 
 /**
  * All fakes in one process, for `npm start` and browser tests. Ports: EVENPENNY_FAKE_S3_PORT, …_SMTP_PORT,
- * …_MAIL_PAGE_PORT, …_BEACON_PORT; data in s3/ and mail/ below EVENPENNY_DATA.
- * EVENPENNY_FAKE_CONTROL=yes opens the beacon's test switch (POST /control).
+ * …_MAIL_PAGE_PORT, …_BEACON_PORT, …_TIMESTAMP_PORT; data in s3/ and mail/ below EVENPENNY_DATA.
+ * EVENPENNY_FAKE_CONTROL=yes opens the test switch of the beacon and of the timestamp authority (POST /control).
  */
 const { env } = process
 
@@ -74,10 +75,19 @@ const beacon = await start(
   'EVENPENNY_FAKE_BEACON_PORT',
   startBeaconFake({ port: port('EVENPENNY_FAKE_BEACON_PORT', 4785), control: env.EVENPENNY_FAKE_CONTROL === 'yes' }),
 )
+const timestamp = await start(
+  'timestamp authority',
+  'EVENPENNY_FAKE_TIMESTAMP_PORT',
+  startTimestampFake({
+    port: port('EVENPENNY_FAKE_TIMESTAMP_PORT', 4786),
+    control: env.EVENPENNY_FAKE_CONTROL === 'yes',
+  }),
+)
 
 console.log(`object store ${s3.url} (bucket ${bucket})`)
 console.log(`mail server ${mail.smtpUrl}, read at ${mail.url}`)
 console.log(`beacon ${beacon.url}`)
+console.log(`timestamp authority ${timestamp.url}`)
 console.log('fakes ready')
 
 for (const signal of ['SIGINT', 'SIGTERM'] as const)

@@ -1,5 +1,5 @@
 import { p256 } from '@noble/curves/nist.js'
-import { utf8 } from '#shared/bytes/bytes.ts'
+import { equalBytes, utf8 } from '#shared/bytes/bytes.ts'
 import { hexBytes } from '#shared/bytes/hex.ts'
 import { formatTime } from '#shared/bytes/time.ts'
 import { type Certificate, certificatesOfPem } from '#shared/timestamp/certificate.ts'
@@ -56,6 +56,10 @@ const one = (pem: string): Certificate => {
 }
 export const DEVELOPMENT_AUTHORITY: Certificate = one(DEVELOPMENT_AUTHORITY_PEM)
 const SIGNER: Certificate = one(SIGNER_PEM)
+
+/** Whether a certificate is the development authority's, or that of the key that signs for it. */
+export const isDevelopmentAuthority = (certificate: Certificate): boolean =>
+  [DEVELOPMENT_AUTHORITY, SIGNER].some((known) => equalBytes(known.spki, certificate.spki))
 
 /**
  * Answers a request with a TimeStampResp (RFC 3161 section 2.4.2) for the second `genTime`, in seconds since 1970.

@@ -9,6 +9,8 @@ const OF_ONE_S_OWN = [
   'EVENPENNY_SMTP_URL',
   'EVENPENNY_BEACON_RELAYS',
   'EVENPENNY_BEACON_NETWORK',
+  'EVENPENNY_TIMESTAMP_URLS',
+  'EVENPENNY_TIMESTAMP_CERTIFICATES',
 ]
 
 /**
@@ -54,6 +56,7 @@ export function localEnvironment({ base, data, ports, databaseUrl, dev }) {
     EVENPENNY_FAKE_SMTP_PORT: String(ports.smtp),
     EVENPENNY_FAKE_MAIL_PAGE_PORT: String(ports.mailPage),
     EVENPENNY_FAKE_BEACON_PORT: String(ports.beacon),
+    EVENPENNY_FAKE_TIMESTAMP_PORT: String(ports.timestamp),
   }
 }
 

@@ -14,9 +14,15 @@ export const PORTS = [
   { name: 'smtp', variable: 'EVENPENNY_FAKE_SMTP_PORT', usual: 4783, what: 'the local mail server' },
   { name: 'mailPage', variable: 'EVENPENNY_FAKE_MAIL_PAGE_PORT', usual: 4784, what: 'the page to read local mail' },
   { name: 'beacon', variable: 'EVENPENNY_FAKE_BEACON_PORT', usual: 4785, what: 'the local beacon' },
+  {
+    name: 'timestamp',
+    variable: 'EVENPENNY_FAKE_TIMESTAMP_PORT',
+    usual: 4786,
+    what: 'the local timestamp authority',
+  },
 ]
 
-/** @typedef {'site' | 'database' | 's3' | 'smtp' | 'mailPage' | 'beacon'} PortName */
+/** @typedef {'site' | 'database' | 's3' | 'smtp' | 'mailPage' | 'beacon' | 'timestamp'} PortName */
 /** @typedef {Record<PortName, number>} Ports */
 
 /**

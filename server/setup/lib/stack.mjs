@@ -74,7 +74,7 @@ export function makeStack({ root, env, ports, logs, onTrouble, onPids, ownGroups
       giveUp.abort()
     }
   }
-  const fakePorts = [ports.s3, ports.smtp, ports.mailPage, ports.beacon]
+  const fakePorts = [ports.s3, ports.smtp, ports.mailPage, ports.beacon, ports.timestamp]
   return {
     failure,
     pids,

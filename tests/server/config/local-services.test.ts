@@ -6,6 +6,7 @@ const local: ServiceAddresses = {
   objectStoreEndpoint: 'http://127.0.0.1:4782',
   smtpUrl: 'smtp://127.0.0.1:4783',
   beaconRelays: ['http://127.0.0.1:4785', 'http://[::1]:4785'],
+  timestampUrls: ['http://127.0.0.1:4786'],
   origin: 'http://localhost:4780',
 }
 
@@ -39,6 +40,11 @@ describe('servicesNotLocal', () => {
       'BEACON_RELAYS',
     ],
     ['no relay at all', { beaconRelays: [] }, 'BEACON_RELAYS'],
+    [
+      'one authority of several elsewhere',
+      { timestampUrls: ['http://127.0.0.1:1', 'https://timestamps.example'] },
+      'TIMESTAMP_URLS',
+    ],
     ['a public address', { origin: 'https://draws.example' }, 'ORIGIN'],
     ['an address of the local network', { origin: 'http://192.168.1.20:4780' }, 'ORIGIN'],
   ])('names %s, and it alone', (_what, change, variable) => {
@@ -46,8 +52,15 @@ describe('servicesNotLocal', () => {
   })
 
   it('names all of them', () => {
-    const away = { databaseUrl: '', objectStoreEndpoint: '', smtpUrl: '', beaconRelays: [''], origin: '' }
-    expect(servicesNotLocal(away)).toHaveLength(5)
+    const away = {
+      databaseUrl: '',
+      objectStoreEndpoint: '',
+      smtpUrl: '',
+      beaconRelays: [''],
+      timestampUrls: [],
+      origin: '',
+    }
+    expect(servicesNotLocal(away)).toHaveLength(6)
   })
 })
 

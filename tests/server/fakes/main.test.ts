@@ -7,7 +7,10 @@ import { join } from 'node:path'
 import { GetObjectCommand, PutObjectCommand } from '@aws-sdk/client-s3'
 import { createTransport } from 'nodemailer'
 import { afterAll, describe, expect, it } from 'vitest'
+import { systemClock } from '#server/adapters/clock/clock.ts'
+import { createTimestamper } from '#server/adapters/timestamp/timestamper.ts'
 import { DEVELOPMENT_CHAIN } from '#shared/protocol/networks.ts'
+import { DEVELOPMENT_AUTHORITY } from '#shared/timestamp/development-authority.ts'
 import { clientFor } from './s3/s3-client.ts'
 
 const data = mkdtempSync(join(tmpdir(), 'evenpenny-fakes-'))
@@ -17,7 +20,7 @@ afterAll(() => {
   rmSync(data, { recursive: true, force: true })
 })
 
-const ports = ['S3', 'SMTP', 'MAIL_PAGE', 'BEACON'].map((name) => `EVENPENNY_FAKE_${name}_PORT`)
+const ports = ['S3', 'SMTP', 'MAIL_PAGE', 'BEACON', 'TIMESTAMP'].map((name) => `EVENPENNY_FAKE_${name}_PORT`)
 
 /** Runs the fakes as npm start does, on free ports; gives what they print until they are ready or end. */
 async function run(env: Record<string, string> = {}) {
@@ -48,6 +51,7 @@ async function run(env: Record<string, string> = {}) {
     smtp: found(/mail server (\S+),/),
     page: found(/read at (\S+)/),
     beacon: found(/beacon (\S+)/),
+    timestamp: found(/timestamp authority (\S+)/),
     stop: () => {
       child.kill('SIGTERM')
       return ended
@@ -58,7 +62,7 @@ async function run(env: Record<string, string> = {}) {
 const credentials = { accessKeyId: 'evenpenny-local', secretAccessKey: 'evenpenny-local-secret' }
 
 describe('the process of all fakes', () => {
-  it('serves all four, stops when asked, and has the same data after a restart', async () => {
+  it('serves all five, stops when asked, and has the same data after a restart', async () => {
     const first = await run()
     const client = clientFor(first.s3, { credentials })
     await client.send(new PutObjectCommand({ Bucket: 'evenpenny', Key: 'kept', Body: 'over a restart' }))
@@ -69,6 +73,13 @@ describe('the process of all fakes', () => {
     const round = await (await fetch(`${first.beacon}/${DEVELOPMENT_CHAIN.chain}/public/1`)).json()
     expect(round.round).toBe(1)
     expect((await fetch(`${first.beacon}/control`, { method: 'POST', body: '{}' })).status).not.toBe(200)
+    const timestamper = createTimestamper({
+      urls: [first.timestamp],
+      trusted: [DEVELOPMENT_AUTHORITY],
+      clock: systemClock,
+    })
+    expect(await timestamper.stamp(new Uint8Array(32))).toMatchObject({ kind: 'stamped' })
+    expect((await fetch(`${first.timestamp}/control`, { method: 'POST', body: '{}' })).status).not.toBe(200)
     expect(await first.stop()).toBe(0)
 
     const second = await run()

@@ -8,7 +8,7 @@ import { startService, waitReady } from '#server/setup/lib/service.mjs'
 import { interruption } from '#server/setup/lib/signals.mjs'
 import { welcome } from '#server/setup/lib/welcome.mjs'
 
-const ports = { site: 1, database: 2, s3: 3, smtp: 4, mailPage: 5, beacon: 6 }
+const ports = { site: 1, database: 2, s3: 3, smtp: 4, mailPage: 5, beacon: 6, timestamp: 7 }
 
 describe('readLogLine', () => {
   it('shows warnings and errors with the reason, and keeps the rest in the file', () => {
