@@ -70,7 +70,14 @@ describe('an archive that nobody touched passes both checks', () => {
   })
 
   it('with a later member that neither knows', async () => {
-    const [zip] = await write('later', { base: 'beacon', change: { add: { 'log-proof.json': '{}' } } })
+    const [zip] = await write('later', { base: 'beacon', change: { add: { 'stub-photographs.json': '{}' } } })
+    expect(await byShared(zip, [], {})).toBeNull()
+    expect(await byShipped(zip, [], {})).toEqual({ status: 0, refusal: null })
+  })
+
+  it('without the log, as archives from before it are', async () => {
+    const change = { withoutLog: ['checkpoint.txt' as const, 'log-proof.json' as const] }
+    const [zip] = await write('before-the-log', { base: 'beacon', change })
     expect(await byShared(zip, [], {})).toBeNull()
     expect(await byShipped(zip, [], {})).toEqual({ status: 0, refusal: null })
   })

@@ -56,6 +56,8 @@ const REQUIRED = [
   'transcript.jsonl',
   'labels.jsonl',
 ].concat(['terms.txt', 'site-key.pem', 'CHECKING.txt', 'check.mjs', 'bls12-381.mjs'])
+// Members that came later: archives from before have neither, and one alone fails.
+const LOG_MEMBERS = ['checkpoint.txt', 'log-proof.json']
 
 // ---- Failing --------------------------------------------------------------------------------------------------------
 
@@ -583,7 +585,7 @@ function checkArchive(c) {
     if (toHex(sha256(bytes)) !== sums.get(name))
       fail(`the member ${name}`, `its bytes do not have the digest in ${SUMS}.`)
   }
-  c.later = [...c.files.keys()].filter((name) => name !== SUMS && !REQUIRED.includes(name))
+  c.later = [...c.files.keys()].filter((name) => ![SUMS, ...REQUIRED, ...LOG_MEMBERS].includes(name))
   return `${c.files.size} members, each with its digest.`
 }
 
@@ -592,6 +594,8 @@ function checkSignatures(c) {
   const der = readPublicKey(c.files.get('site-key.pem'), 'site-key.pem')
   c.fingerprint = toHex(sha256(der))
   const key = createPublicKey({ key: der, format: 'der', type: 'spki' })
+  c.rawKey = der.subarray(12)
+  c.publicKey = key
   for (const name of ['seal', 'result']) {
     const signature = c.files.get(`${name}.sig`)
     if (signature.length !== 64) fail(`${name}.sig`, 'it does not have the 64 bytes of an Ed25519 signature.')
@@ -1014,6 +1018,8 @@ function checkTranscript(c) {
 function checkReceipts(c) {
   const found = c.receipts.map((path) => checkReceipt(c, readFileSync(path), basename(path)))
   if (found.length === 0) found.push('no receipt was given.')
+  const log = checkLog(c)
+  if (log) found.push(log)
   if (c.later.length) found.push(`Not examined: ${c.later.join(', ')}.`)
   if (c.strays.length)
     found.push(`In the folder, but no part of the archive, and not examined: ${c.strays.join(', ')}.`)
@@ -1077,6 +1083,132 @@ function checkReceipt(c, bytes, where) {
   return `${where}: leaf ${leaf} with ${receipt.tickets} tickets is in the sealed list.`
 }
 
+// ---- The site's log (section 13) ------------------------------------------------------------------------------------
+//
+// checkpoint.txt is a signed note (C2SP signed-note and tlog-checkpoint): the log's name, its size and the root of its tree, an
+// empty line, and signatures. log-proof.json holds what the log says of this draw, each entry with its path to that root. Leaves
+// and nodes are hashed as RFC 9162, section 2.1.1, has it; unlike the list's tree this one has no counts.
+
+const LOG_EVENTS = (
+  'opened closed sealed replaced postponed cancelled tosses-done drawn failed revealed promoted forfeited substituted ' +
+  'withheld suspended restored checkpointed'
+).split(' ')
+
+/** Bytes of padded base64 in its one spelling, or null. */
+function base64(text) {
+  const bytes = Buffer.from(text, 'base64')
+  return bytes.toString('base64') === text ? bytes : null
+}
+
+/** The text of a signed note and its signature lines: name, four bytes of key id, signature. */
+function readNote(bytes, where) {
+  if (bytes.length > 2 ** 18) fail(where, 'it is longer than any signed note here.')
+  const note = utf8(bytes, where)
+  if (!note.endsWith('\n') || /[\0-\x09\x0b-\x1f]/.test(note)) fail(where, 'a signed note is whole lines of text.')
+  const split = note.lastIndexOf('\n\n')
+  const lines = note
+    .slice(split + 2)
+    .split('\n')
+    .slice(0, -1)
+  if (split < 1 || lines.length === 0) fail(where, 'it has no text, no empty line or no signature.')
+  if (lines.length > 100) fail(where, 'it has more than 100 signatures.')
+  const signatures = lines.map((line, index) => {
+    const match = /^\u2014 ([^\p{White_Space}+]+) ([A-Za-z0-9+/=]+)$/u.exec(line)
+    const raw = match && base64(match[2])
+    if (!raw || raw.length < 5) fail(`${where} signature ${index + 1}`, 'it is not a dash, a name and base64.')
+    return { name: match[1], id: raw.subarray(0, 4), signature: raw.subarray(4) }
+  })
+  return { text: note.slice(0, split + 1), signatures }
+}
+
+/** checkpoint.txt: three lines, signed under the log's name by the key that signed the seal. */
+function readCheckpoint(c) {
+  const where = 'checkpoint.txt'
+  const { text: body, signatures } = readNote(c.files.get(where), where)
+  const lines = /^([^\n]+)\n(0|[1-9][0-9]{0,15})\n([A-Za-z0-9+/=]{44})\n$/.exec(body)
+  if (!lines) fail(where, 'a checkpoint is three lines: the name of the log, its size, its root.')
+  const [, origin, size, encoded] = lines
+  const root = base64(encoded)
+  count(Number(size), 0, MAX_COUNT, `${where} line 2`)
+  if (!root || root.length !== 32) fail(`${where} line 3`, 'the root is not 32 bytes in base64.')
+  if (/[\p{White_Space}+]/u.test(origin)) fail(`${where} line 1`, 'the name of the log holds a space or a plus sign.')
+  const id = sha256(Buffer.from(`${origin}\n`, 'utf8'), byte(1), c.rawKey).subarray(0, 4)
+  const own = signatures.filter((line) => line.name === origin && line.id.equals(id))
+  if (own.length === 0) fail(where, 'no signature is of the key that signed the seal.')
+  for (const { signature } of own) {
+    if (signature.length !== 64 || !verify(null, Buffer.from(body, 'utf8'), c.publicKey, signature)) {
+      fail(where, 'the signature of the key that signed the seal is not good.')
+    }
+  }
+  return { origin, size: Number(size), root }
+}
+
+/** A leaf of the log: its data are these very bytes. */
+function readLogLeaf(data, where) {
+  if (typeof data !== 'string') fail(where, 'text is expected.')
+  const names = ['at', 'digest', 'draw', 'event', 'format', 'kind', 'note', 'organisation', 'supersedes']
+  const leaf = members(parseCanonical(data, where), names, where)
+  time(leaf.at, `${where} at`)
+  for (const name of ['digest', 'note', 'supersedes']) if (leaf[name] !== null) hex(leaf[name], 32, `${where} ${name}`)
+  if (leaf.draw !== null) text(leaf.draw, `${where} draw`)
+  one(leaf.event, LOG_EVENTS, `${where} event`)
+  one(leaf.format, ['evenpenny/1'], `${where} format`)
+  one(leaf.kind, ['log'], `${where} kind`)
+  text(leaf.organisation, `${where} organisation`)
+  return leaf
+}
+
+/** What the log says of the draw: its opening came first, then this seal, then this result, and no seal between the two. */
+function checkLog(c) {
+  const present = LOG_MEMBERS.filter((name) => c.files.has(name))
+  if (present.length === 0) return ''
+  for (const name of LOG_MEMBERS)
+    if (!c.files.has(name)) fail(`the member ${name}`, `it is missing, and ${present[0]} is there.`)
+  const head = readCheckpoint(c)
+  const where = 'log-proof.json'
+  const proof = members(parseCanonical(utf8(c.files.get(where), where), where), ['entries', 'format', 'kind'], where)
+  one(proof.format, ['evenpenny/1'], `${where} format`)
+  one(proof.kind, ['log-proof'], `${where} kind`)
+  let before = -1
+  const entries = list(proof.entries, `${where} entries`).map((entry, k) => {
+    const at = `${where} entries[${k}]`
+    members(entry, ['index', 'leaf', 'path'], at)
+    if (count(entry.index, 0, MAX_COUNT - 1, `${at}.index`) <= before) fail(`${at}.index`, 'it is not in its order.')
+    before = entry.index
+    const leaf = readLogLeaf(entry.leaf, `${at}.leaf`)
+    list(entry.path, `${at}.path`).forEach((sibling, j) => hex(sibling, 32, `${at}.path[${j}]`))
+    return { ...leaf, index: entry.index, path: entry.path, data: entry.leaf, where: at }
+  })
+  for (const entry of entries) {
+    const sides = entry.index < head.size ? sidesOf(entry.index, head.size) : null
+    if (!sides || sides.length !== entry.path.length)
+      fail(`${entry.where}.path`, `entry ${entry.index} of ${head.size} does not have such a path.`)
+    const top = entry.path.reduce(
+      (below, sibling, j) =>
+        sides[j] === 'L' ? sha256(byte(1), fromHex(sibling), below) : sha256(byte(1), below, fromHex(sibling)),
+      sha256(byte(0), Buffer.from(entry.data, 'utf8')),
+    )
+    if (!top.equals(head.root)) fail(`${entry.where}.path`, 'it does not lead to the root in checkpoint.txt.')
+    if (entry.draw !== c.seal.draw) fail(`${entry.where}.leaf draw`, 'the entry is about another draw.')
+  }
+  if (entries[0]?.event !== 'opened') fail(`${where} entries`, 'the log does not open the draw before everything else.')
+  const isSeal = ({ event }) => event === 'sealed' || event === 'replaced'
+  const sealed = entries.find((entry) => isSeal(entry) && entry.digest === c.sealDigest)
+  if (!sealed) fail(`${where} entries`, 'no entry of the log names this seal.')
+  const result = toHex(sha256(c.files.get('result.json')))
+  const drawn = entries.find(({ event, digest }) => event === 'drawn' && digest === result)
+  if (!drawn || drawn.index < sealed.index)
+    fail(`${where} entries`, 'no entry of the log names this result after its seal.')
+  if (
+    entries.some(
+      (entry) => isSeal(entry) && entry !== sealed && entry.index > sealed.index && entry.index < drawn.index,
+    )
+  )
+    fail(`${where} entries`, 'the log names another seal between this one and the result.')
+  c.log = { ...head, root: toHex(head.root) }
+  return `The log ${head.origin}, ${head.size} entries, holds ${entries.length} of this draw; entry ${sealed.index} is this seal.`
+}
+
 // ---- Running --------------------------------------------------------------------------------------------------------
 
 const STEPS = [
@@ -1112,6 +1244,12 @@ function verdict(c) {
       ? 'Signed by the key whose fingerprint was given.'
       : `Signed by an unknown key. Compare all 64 digits with the fingerprint that the site publishes: ${c.fingerprint}`,
   )
+  if (c.log) {
+    lines.push(
+      `The site's log ${c.log.origin}, at ${c.log.size} entries with the root ${c.log.root},`,
+      '  holds the opening, this seal and this result. Whether everybody is shown the same log is for those who remember its checkpoints.',
+    )
+  }
   if (c.withheld.length)
     lines.push(`Label withheld for ${c.withheld.length} of the winning leaves: ${leaves(c.withheld)}.`)
   lines.push(

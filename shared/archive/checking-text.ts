@@ -55,9 +55,13 @@ That the picks follow from the seal and its sources is more arithmetic than a te
     transcript.jsonl  every coin of every pick: the tickets on its two sides, its flips, how it fell
     labels.jsonl      the words that announce each winner; a winner may ask to have theirs taken out
     site-key.pem      the site's public key
+    checkpoint.txt    the head of the site's log when this archive was made, signed: its size and its root
+    log-proof.json    what the log says of this draw, each entry with its path to that root
     SHA256SUMS        digests of all the other files, against damage
     check.mjs         the check
     bls12-381.mjs     a published library that it needs for the beacon's signature
+
+Archives from before the site kept its log as a tree lack checkpoint.txt and log-proof.json.
 
 
 4. What no check can show

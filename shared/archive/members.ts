@@ -25,7 +25,19 @@ export type UnlockedMember = (typeof UNLOCKED_MEMBERS)[number]
 export type LockedMember = Exclude<ArchiveMember, UnlockedMember>
 export const LOCKED_MEMBERS = ARCHIVE_MEMBERS.filter((name): name is LockedMember => !isUnlocked(name))
 
-/** Whether a name is that of a member which this version knows. */
+/**
+ * Members that an archive may have besides, in the order in which we write them: the head of the site's log and what the
+ * log says of the draw. Archives from before they were added have none.
+ */
+export const LATER_MEMBERS = ['checkpoint.txt', 'log-proof.json'] as const
+export type LaterMember = (typeof LATER_MEMBERS)[number]
+
+/** Whether this version reads a member of this name, needed or not. */
+export function isKnownMember(name: string): boolean {
+  return isArchiveMember(name) || (LATER_MEMBERS as readonly string[]).includes(name)
+}
+
+/** Whether a name is that of a member which every archive has. */
 export function isArchiveMember(name: string): name is ArchiveMember {
   return (ARCHIVE_MEMBERS as readonly string[]).includes(name)
 }

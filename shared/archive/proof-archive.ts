@@ -2,6 +2,8 @@ import { ArchiveError } from '#shared/archive/archive-error.ts'
 import {
   ARCHIVE_MEMBERS,
   isArchiveMember,
+  LATER_MEMBERS,
+  type LaterMember,
   LOCKED_MEMBERS,
   type LockedMember,
   memberMethod,
@@ -19,9 +21,15 @@ export function proofMember(name: string, content: MemberContent): ZipMember {
   return content instanceof Uint8Array ? bytesMember(name, content, method) : { name, method, open: content }
 }
 
+/** What the archive under a lock is made of: all its members, and the later ones that there are. */
+export type LockedContents = Readonly<Record<LockedMember, MemberContent> & Partial<Record<LaterMember, MemberContent>>>
+
 /** The members of the archive that is kept under a lock (PROTOCOL section 9), ready for `writeZip`. */
-export function lockedMembers(contents: Readonly<Record<LockedMember, MemberContent>>): ZipMember[] {
-  return LOCKED_MEMBERS.map((name) => proofMember(name, contents[name]))
+export function lockedMembers(contents: LockedContents): ZipMember[] {
+  return [...LOCKED_MEMBERS, ...LATER_MEMBERS].flatMap((name) => {
+    const content = contents[name]
+    return content === undefined ? [] : [proofMember(name, content)]
+  })
 }
 
 /** A member of a public archive and the digest of its bytes, in hex. */

@@ -118,17 +118,16 @@ export function checkLogProof(
   }
   const missing = (what: string) =>
     fail('log-event-missing' as const, 'entries', `No entry of the log says that the draw was ${what}.`)
-  const opened = entries.find(({ leaf }) => leaf.event === 'opened')
-  if (!opened || opened !== entries[0]) return missing('opened, before everything else')
+  if (entries[0]?.leaf.event !== 'opened') return missing('opened, before everything else')
   const sealed = entries.find(({ leaf }) => SEALING.has(leaf.event) && leaf.digest === drawn.sealDigest)
   if (!sealed) return missing('sealed with this seal')
   const settled = entries.find(({ leaf }) => leaf.event === 'drawn' && leaf.digest === drawn.resultDigest)
   if (!settled || settled.index < sealed.index) return missing('drawn with this result, after its seal')
-  const later = entries.find(
-    ({ index, leaf }) => index > sealed.index && SEALING.has(leaf.event) && leaf.digest !== drawn.sealDigest,
+  const other = entries.find(
+    ({ index, leaf }) => SEALING.has(leaf.event) && index > sealed.index && index < settled.index,
   )
-  if (later && later.index < settled.index) {
-    return fail('log-event-missing', `entries`, `Entry ${later.index} of the log names another seal after this one.`)
+  if (other) {
+    return fail('log-event-missing', 'entries', `Entry ${other.index} of the log names a seal after this one.`)
   }
   return ok({ sealed })
 }

@@ -1,5 +1,5 @@
 import { ArchiveError } from '#shared/archive/archive-error.ts'
-import { ARCHIVE_MEMBERS, isArchiveMember } from '#shared/archive/members.ts'
+import { ARCHIVE_MEMBERS, isKnownMember } from '#shared/archive/members.ts'
 import { parseSums, SUMS_MEMBER } from '#shared/archive/sums.ts'
 import { toHex } from '#shared/bytes/hex.ts'
 import { createEntriesReader } from '#shared/protocol/check/entries-reader.ts'
@@ -54,6 +54,6 @@ export const checkMembers: CheckStep = async (state) => {
     if (entries !== null) state.entries = entries.end()
   }
   state.progress(total, total)
-  state.notExamined = [...source.names.filter((name) => !isArchiveMember(name)), ...(source.strays ?? [])]
+  state.notExamined = [...source.names.filter((name) => !isKnownMember(name)), ...(source.strays ?? [])]
   return `${source.names.length} members, ${total} bytes unpacked, each with the digest that SHA256SUMS states.`
 }

@@ -1,6 +1,8 @@
 import type { ArchiveErrorCode } from '#shared/archive/archive-error.ts'
 import type { SumsCode } from '#shared/archive/sums.ts'
 import type { Failure, Result } from '#shared/bytes/result.ts'
+import type { CheckpointCode } from '#shared/log/checkpoint.ts'
+import type { LogProofCode } from '#shared/log/log-proof.ts'
 import type { BeaconCode } from '#shared/protocol/beacon.ts'
 import type { EntriesCode } from '#shared/protocol/entries-csv.ts'
 import type { LabelsCode } from '#shared/protocol/labels.ts'
@@ -68,6 +70,8 @@ export type CheckCode =
   | LabelsCode
   | ReceiptShapeCode
   | ReceiptCode
+  | CheckpointCode
+  | LogProofCode
 
 /** The first thing that fails, and where. `at` begins with the member's name; it may hold text out of the archive. */
 export interface CheckFailure {

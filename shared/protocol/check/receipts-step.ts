@@ -1,4 +1,5 @@
 import type { Sha256 } from '#shared/bytes/hashing.ts'
+import { checkLog } from '#shared/protocol/check/log-members.ts'
 import { need, StepFailure } from '#shared/protocol/check/failure.ts'
 import { type CheckStep, type GivenReceipt, throwIfCancelled } from '#shared/protocol/check/state.ts'
 import { checkReceipt, parseReceipt } from '#shared/protocol/receipt.ts'
@@ -22,14 +23,18 @@ export function examineReceipt(
   return `The ${what} ${name} holds: leaf ${receipt.leaf} with ${tickets} is in the sealed list.`
 }
 
-/** Step 12: receipts and short proofs, where given (PROTOCOL section 10); later members are named, not examined. */
-export const checkReceipts: CheckStep = (state) => {
+/**
+ * Step 12: receipts and short proofs, where given (PROTOCOL section 10), and what the site's log says of the draw, where
+ * the archive has it; other later members are named, not examined.
+ */
+export const checkReceipts: CheckStep = async (state) => {
   const found: string[] = []
   for (const given of state.options.receipts ?? []) {
     throwIfCancelled(state)
     found.push(examineReceipt(state.tools.sha256, given, state.seal, state.sealDigestHex))
   }
   if (found.length === 0) found.push('No receipt was given.')
+  found.push(...(await checkLog(state)))
   if (state.notExamined.length > 0) found.push(`Not examined: ${state.notExamined.join(', ')}.`)
   return found.join(' ')
 }

@@ -3,6 +3,8 @@ import { type MembersSource, readMember } from '#shared/archive/members-source.t
 import type { ReadEntries } from '#shared/protocol/check/entries-reader.ts'
 import type { CheckTools } from '#shared/protocol/check/tools.ts'
 import { StepFailure } from '#shared/protocol/check/failure.ts'
+import type { CheckpointNote } from '#shared/log/checkpoint.ts'
+import type { ProvenEntry } from '#shared/log/log-proof.ts'
 import type { DrawResult } from '#shared/protocol/result.ts'
 import type { Seal } from '#shared/protocol/seal-types.ts'
 
@@ -60,6 +62,8 @@ export interface CheckState {
   drawKey: Uint8Array | null
   walked: { readonly picks: number; readonly coins: number; readonly flips: number }
   transcriptDigest: string
+  /** The head of the site's log and the entry in it that sealed the draw, where the archive has them: from step 12 on. */
+  log: { readonly head: CheckpointNote; readonly sealed: ProvenEntry } | null
   /** Winning leaves whose label is not open. */
   withheld: readonly number[]
   /** What the archive or the folder holds and this version does not read. */
@@ -79,6 +83,8 @@ export const MEMBER_LIMITS = {
   'result.sig': 64,
   'labels.jsonl': 2 ** 26,
   'site-key.pem': 2 ** 12,
+  'checkpoint.txt': 2 ** 18,
+  'log-proof.json': 2 ** 24,
 } as const
 
 /** A whole member; fails where it passes its limit. */

@@ -1,6 +1,6 @@
 import { toHex } from '#shared/bytes/hex.ts'
 import type { StepNumber } from '#shared/protocol/check/failure.ts'
-import type { MEMBER_LIMITS } from '#shared/protocol/check/state.ts';
+import type { MEMBER_LIMITS } from '#shared/protocol/check/state.ts'
 import { type CheckState } from '#shared/protocol/check/state.ts'
 
 /** A named value that a step read or found: a figure, a digest in hex, or words. Words may come out of the archive. */

@@ -1,3 +1,4 @@
+import { toHex } from '#shared/bytes/hex.ts'
 import type { CheckState } from '#shared/protocol/check/state.ts'
 import { networkOf } from '#shared/protocol/networks.ts'
 
@@ -17,6 +18,8 @@ export interface CheckVerdict {
   /** Whether a fingerprint was given to compare the key with. */
   readonly keyCompared: boolean
   readonly developmentChain: boolean
+  /** The head of the site's log that lies in the archive and holds what the log says of the draw; null without one. */
+  readonly log: { readonly origin: string; readonly size: number; readonly rootHex: string } | null
   /** Winning leaves whose label is not open. */
   readonly withheld: readonly number[]
   readonly notExamined: readonly string[]
@@ -39,9 +42,16 @@ export function verdictOf(state: CheckState): CheckVerdict {
     fingerprint: state.fingerprint,
     keyCompared: state.options.expectedKey !== undefined,
     developmentChain: beacon !== null && networkOf(beacon) === 'development',
+    log: logOf(state),
     withheld: state.withheld,
     notExamined: state.notExamined,
   }
+}
+
+function logOf({ log }: CheckState): CheckVerdict['log'] {
+  if (log === null) return null
+  const { origin, size, root } = log.head.checkpoint
+  return { origin, size, rootHex: toHex(root) }
 }
 
 /** The verdict in whole sentences, the two halves first. */
@@ -62,6 +72,13 @@ export function verdictSentences(verdict: CheckVerdict): readonly string[] {
       : 'Signed by an unknown key. Compare all 64 digits with the fingerprint that the site publishes on its pages, posters ' +
           `and tickets: ${verdict.fingerprint}`,
   )
+  if (verdict.log !== null) {
+    const { origin, size, rootHex } = verdict.log
+    sentences.push(
+      `The site’s log ${origin}, at ${size} entries with the root ${rootHex}, holds the opening, this seal and this result. ` +
+        'Whether everybody is shown the same log is for those who remember its checkpoints.',
+    )
+  }
   if (verdict.withheld.length > 0) {
     const leaves = verdict.withheld.slice(0, 20).join(', ') + (verdict.withheld.length > 20 ? ', …' : '')
     sentences.push(

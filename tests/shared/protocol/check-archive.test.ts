@@ -41,7 +41,7 @@ describe('checkArchive with nothing of Node', () => {
   it('names winners whose label is withheld, and members that it does not know', async () => {
     const zip = await zipOf('beacon', {
       labels: (text) => text.slice(text.indexOf('\n') + 1),
-      extraMembers: () => [['log-proof.json', new Uint8Array([123, 125])]],
+      extraMembers: () => [['stub-photographs.json', new Uint8Array([123, 125])]],
     })
     const report = await checkArchive({
       open: () => openZip(memorySource(zip)),
@@ -49,7 +49,7 @@ describe('checkArchive with nothing of Node', () => {
       options: { allowDevelopmentChain: true },
     })
     expect(report.ok && report.verdict.withheld).toEqual([report.ok && report.result.picks[0]?.leaf])
-    expect(report.ok && report.verdict.notExamined).toEqual(['log-proof.json'])
+    expect(report.ok && report.verdict.notExamined).toEqual(['stub-photographs.json'])
   })
 
   it('stops when told to, without a verdict', async () => {

@@ -11,6 +11,8 @@ import { hexBytes, toHex } from '#shared/bytes/hex.ts'
 import { unwrap } from '#shared/bytes/result.ts'
 import { formatTime, parseTime } from '#shared/bytes/time.ts'
 import { canonicalText } from '#shared/bytes/canonical-json.ts'
+import { checkpointText, logKey } from '#shared/log/checkpoint.ts'
+import { formatNote } from '#shared/log/signed-note.ts'
 import { commitEntrant, deriveSalts, referenceFromEntropy } from '#shared/protocol/commitments.ts'
 import { signDevelopmentRound } from '#shared/protocol/development-chain.ts'
 import { prepareEntries, type SealEntrant } from '#shared/protocol/entrants.ts'
@@ -25,6 +27,7 @@ import { encodePem, keyFingerprint, publicKeyOf, signBytes } from '#shared/proto
 import { tossBits } from '#shared/protocol/tosses.ts'
 import type { WalkRule } from '#shared/sampling/walk.ts'
 import { collect } from '#tests/support/archive/collect.ts'
+import { TestLog } from '#tests/support/log/test-log.ts'
 
 /** Kinds of draw that tests start from. */
 export const BASES = ['beacon', 'beacon-and-tosses', 'tosses-only', 'hall', 'hall-every-ticket'] as const
@@ -44,7 +47,17 @@ export interface Stages {
   /** The list as it lies in the archive. */
   entries(csv: string): string
   labels(text: string): string
-  signature(record: 'seal' | 'result', signature: Uint8Array, message: Uint8Array): Uint8Array
+  signature(record: 'seal' | 'result' | 'checkpoint', signature: Uint8Array, message: Uint8Array): Uint8Array
+  /** The leaves of the site's log, a line each, before they are hashed. */
+  logLeaves(text: string): string
+  /** The checkpoint's lines before they are signed, and the note as it lies in the archive. */
+  checkpointText(text: string): string
+  checkpoint(note: string): string
+  /** Numbers of the entries that are proven: those of the draw. */
+  logEntries(own: readonly number[]): readonly number[]
+  logProof(text: string): string
+  /** Whether an archive has this member of the log. */
+  hasLogMember(name: 'checkpoint.txt' | 'log-proof.json'): boolean
   member(name: string, bytes: Uint8Array): Uint8Array | null
   extraMembers(): readonly (readonly [string, Uint8Array])[]
   sums(text: string): string
@@ -187,10 +200,17 @@ export async function testArchive(base: Base, stages: Partial<Stages> = {}): Pro
     return { label, labelSalt: toHex(salts.labelSalt), leaf }
   })
 
-  const sign = (record: 'seal' | 'result', message: Uint8Array) => {
+  const sign = (record: 'seal' | 'result' | 'checkpoint', message: Uint8Array) => {
     const signature = signBytes(secretKey, message)
     return stages.signature?.(record, signature, message) ?? signature
   }
+  const log = logMembers(stages, {
+    draw: seal.draw,
+    sealDigest: toHex(sealDigest),
+    resultDigest: toHex(sha256(utf8(resultText))),
+    publicKey,
+    sign: (message) => sign('checkpoint', message),
+  })
   checkFiles ??= readCheckFiles()
   const contents = lockedMembers({
     'CHECKING.txt': utf8(CHECKING_TEXT),
@@ -202,6 +222,7 @@ export async function testArchive(base: Base, stages: Partial<Stages> = {}): Pro
     'result.sig': sign('result', utf8(resultText)),
     'transcript.jsonl': utf8(transcript),
     'site-key.pem': utf8(encodePem(publicKey)),
+    ...log,
     ...(await checkFiles),
   })
   contents.push(proofMember('labels.jsonl', utf8(pass(stages.labels, new TextDecoder().decode(labelsBytes(labels))))))
@@ -227,6 +248,43 @@ export async function testArchive(base: Base, stages: Partial<Stages> = {}): Pro
   })
   const receiptText = pass(stages.receiptText, canonicalText(pass(stages.receipt, structuredClone(receipt))))
   return { members, receipt: utf8(receiptText), fingerprint: keyFingerprint(sha256, publicKey) }
+}
+
+/** What the site's log says of the draw, between entries of others, and its head. */
+function logMembers(
+  stages: Partial<Stages>,
+  facts: {
+    readonly draw: string
+    readonly sealDigest: string
+    readonly resultDigest: string
+    readonly publicKey: Uint8Array
+    sign(message: Uint8Array): Uint8Array
+  },
+): { 'checkpoint.txt'?: Uint8Array; 'log-proof.json'?: Uint8Array } {
+  const { draw, sealDigest, resultDigest, publicKey } = facts
+  const log = new TestLog()
+  log.add('autumn-raffle', 'opened')
+  log.add(draw, 'opened')
+  log.add('autumn-raffle', 'closed')
+  log.add(draw, 'closed')
+  log.add(draw, 'sealed', sealDigest)
+  log.add('autumn-raffle', 'cancelled')
+  log.add(draw, 'drawn', resultDigest)
+  log.add('winter-raffle', 'opened')
+  const leaves = pass(stages.logLeaves, log.leaves.join('\n')).split('\n')
+  log.leaves.splice(0, Infinity, ...leaves)
+  const own: readonly number[] = leaves.flatMap((leaf, index) => (leaf.includes(`"draw":"${draw}"`) ? [index] : []))
+  const text = pass(stages.checkpointText, checkpointText(log.head()))
+  const key = logKey(sha256, log.origin, publicKey)
+  const note = formatNote({ text, signatures: [{ name: key.name, id: key.id, signature: facts.sign(utf8(text)) }] })
+  const members = {
+    'checkpoint.txt': utf8(pass(stages.checkpoint, note)),
+    'log-proof.json': utf8(pass(stages.logProof, new TextDecoder().decode(log.proof(pass(stages.logEntries, own))))),
+  }
+  const has = stages.hasLogMember ?? (() => true)
+  return Object.fromEntries(
+    Object.entries(members).filter(([name]) => has(name as 'checkpoint.txt' | 'log-proof.json')),
+  )
 }
 
 function pass<T>(stage: ((value: T) => T) | undefined, value: T): T {

@@ -59,10 +59,20 @@ const stages = z.strictObject({
   shortProof: z.boolean().optional(),
   signature: z
     .strictObject({
-      record: z.enum(['seal', 'result']),
+      record: z.enum(['seal', 'result', 'checkpoint']),
       change: z.enum(['flip', 'other-key', 'other-record', 'longer', 'shorter', 'add-order', 'small-order']),
     })
     .optional(),
+  /** The leaves of the site's log, a line each, before they are hashed and signed. */
+  logLeaves: z.array(textChange).optional(),
+  /** The checkpoint's lines before they are signed, the note behind its signing, and the proofs. */
+  checkpointText: z.array(textChange).optional(),
+  checkpoint: z.array(textChange).optional(),
+  logProof: z.array(textChange).optional(),
+  /** Numbers of the entries that are proven, in place of the draw's: 1, 3, 4 and 6. */
+  logEntries: z.array(z.number()).optional(),
+  /** Members of the log that the archive does without. */
+  withoutLog: z.array(z.enum(['checkpoint.txt', 'log-proof.json'])).optional(),
   /** Changes the bytes of members behind SHA256SUMS, as damage does; null takes one out. */
   damage: z.record(z.string(), z.array(textChange).nullable()).optional(),
   /** Members that the format does not know. */

@@ -35,6 +35,12 @@ export async function tamper({ base, change }: Pick<Mutation, 'base' | 'change'>
     entries: texts(change.entries),
     labels: texts(change.labels),
     sums: texts(change.sums),
+    logLeaves: texts(change.logLeaves),
+    checkpointText: texts(change.checkpointText),
+    checkpoint: texts(change.checkpoint),
+    logEntries: (own) => change.logEntries ?? own,
+    logProof: texts(change.logProof),
+    hasLogMember: (name) => !change.withoutLog?.includes(name),
     receipt: (receipt) => objects(change.receipt)(short ? shortProof(sha256, receipt as Receipt) : receipt),
     receiptText: texts(change.receiptText),
     signature: (record, good, message) =>
