@@ -9,8 +9,6 @@ import { mail } from '#server/store/schema/operation.ts'
 import { archive, result } from '#server/store/schema/result.ts'
 import { seal } from '#server/store/schema/seal.ts'
 
-/** An upload that nobody has touched for so long has lost its process, in milliseconds. */
-const STALE_UPLOAD = 10 * 60_000
 /** What is due is left to its own job for so long, in milliseconds. */
 const GRACE = 10_000
 
@@ -45,13 +43,14 @@ export async function sweep(services: Services): Promise<void> {
     .where(and(isNull(archive.drawId), lte(result.drawnAt, due)))
   for (const { id } of unstored) await ensure(services, 'archive', id)
   await ensureSending(services, due)
+  // An upload that nobody has touched for ten minutes has lost its process.
   await db
     .update(entrantImport)
     .set({ state: 'failed', failure: 'The upload broke off. Nothing was stored; upload the file again.' })
     .where(
       and(
         eq(entrantImport.state, 'reading'),
-        lt(entrantImport.touchedAt, new Date(services.clock.now().getTime() - STALE_UPLOAD)),
+        lt(entrantImport.touchedAt, sql`clock_timestamp() - interval '10 minutes'`),
       ),
     )
 }

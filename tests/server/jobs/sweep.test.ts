@@ -11,6 +11,7 @@ import { sendMail } from '#server/jobs/mail/send-mail.ts'
 import { settleDraw } from '#server/jobs/settle-draw.ts'
 import { sweep } from '#server/jobs/sweep.ts'
 import { getDraw } from '#server/store/queries/draw-page.ts'
+import { getImport } from '#server/store/queries/imports.ts'
 import { sealInForce, sealsOf } from '#server/store/queries/seals.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { entrantPerson } from '#server/store/schema/entrant.ts'
@@ -62,6 +63,24 @@ describe('the sweep', () => {
     clock.advance(11_000)
     await sweep(site.services)
     expect([await live('settle', due), await live('archive', due)]).toEqual([0, 1])
+  })
+})
+
+describe('an upload whose process is gone', () => {
+  it('is given up after ten minutes without a sign of life, and no sooner', async () => {
+    const id = await makeClosed(site.services, office)
+    const left = async (minutes: number) => {
+      const { rows } = await site.services.pool.query<{ id: string }>(
+        `insert into entrant_import (draw_id, file_name, bytes_total, created_at, touched_at)
+         values ($1, 'list.csv', 9, now(), clock_timestamp() - make_interval(mins => $2)) returning id`,
+        [id, minutes],
+      )
+      return rows[0]?.id as string
+    }
+    const [lost, alive] = [await left(11), await left(9)]
+    await sweep(site.services)
+    const state = async (of: string) => (await getImport(site.services.db, { draw: id, import: of }))?.state
+    expect([await state(lost), await state(alive)]).toEqual(['failed', 'reading'])
   })
 })
 
