@@ -1,3 +1,5 @@
+import { SEALING_POINTS, type SealingPoint } from '#server/commands/draws/complete-sealing.ts'
+
 /** The writes of settling and of what follows it, in their order: after each of them a worker may die. */
 export const CRASH_POINTS = [
   'round-noted',
@@ -18,7 +20,10 @@ export const CRASH_POINTS = [
   'mail-marked',
 ] as const
 
-export type CrashPoint = (typeof CRASH_POINTS)[number]
+export type CrashPoint = (typeof CRASH_POINTS)[number] | SealingPoint
+
+/** Those of sealing, which come before. */
+export { SEALING_POINTS }
 
 /** Called after each write. Does nothing but in a test that wants the worker dead at this point. */
 export type AfterWrite = (point: CrashPoint) => void
@@ -28,8 +33,9 @@ export const goOn: AfterWrite = () => undefined
 /** Kills this process at the point, as a power cut would: no handler runs, nothing is closed. Null: never. */
 export function crashAt(point: string | null): AfterWrite {
   if (point === null) return goOn
-  if (!(CRASH_POINTS as readonly string[]).includes(point)) {
-    throw new Error(`EVENPENNY_CRASH_AT must be one of ${CRASH_POINTS.join(', ')}.`)
+  const known: readonly string[] = [...SEALING_POINTS, ...CRASH_POINTS]
+  if (!known.includes(point)) {
+    throw new Error(`EVENPENNY_CRASH_AT must be one of ${known.join(', ')}.`)
   }
   return (reached) => {
     if (reached !== point) return

@@ -1,5 +1,6 @@
 import { CommandError } from '#server/commands/command-error.ts'
 import { closeDueDraw } from '#server/commands/draws/close-draw.ts'
+import { completeSealing } from '#server/commands/draws/complete-sealing.ts'
 import { failDraw, FAILED_AFTER_MS } from '#server/commands/draws/fail-draw.ts'
 import { postponeLongList } from '#server/commands/draws/postpone-draw.ts'
 import { sealLongList } from '#server/commands/draws/seal-draw.ts'
@@ -11,6 +12,7 @@ import { prepareMail } from './mail/prepare-mail.ts'
 import { sendMail } from './mail/send-mail.ts'
 import { settleDraw } from './settle-draw.ts'
 import { storeArchive } from './store-archive.ts'
+import { storeCheckpoints } from './store-checkpoints.ts'
 
 /** What came of a job: done, to be run again later, or given up for a reason that trying again does not mend. */
 export type JobOutcome =
@@ -23,6 +25,8 @@ export type Handlers = { readonly [Q in QueueName]: (data: JobData[Q]) => Promis
 const DONE: JobOutcome = { kind: 'done' }
 /** While a round is awaited: every second at first, since it is due any moment, then more calmly. Milliseconds. */
 const waitForRound = (waited: number): number => (waited < 60_000 ? 1000 : waited < 3_600_000 ? 5000 : 30_000)
+/** While no authority gives a timestamp: soon again at first, then more calmly. Milliseconds. */
+const waitForTimestamp = (tries: number): number => Math.min(2000 * 1.5 ** Math.min(tries, 20), 30_000)
 
 /** What each kind of job does. Throwing makes the queue try the job again. */
 export function jobHandlers(services: Services, afterWrite: AfterWrite): Handlers {
@@ -43,6 +47,12 @@ export function jobHandlers(services: Services, afterWrite: AfterWrite): Handler
         throw error
       }
     },
+    async timestamp(data) {
+      const outcome = await completeSealing(services, { draw: data.draw, afterWrite })
+      if (outcome.kind === 'discarded') return { kind: 'given-up', reason: outcome.reason }
+      if (outcome.kind === 'waiting') return { kind: 'again', at: in_(waitForTimestamp(outcome.tries)) }
+      return DONE
+    },
     async settle(data) {
       const outcome = await settleDraw(services, afterWrite, data)
       switch (outcome.kind) {
@@ -58,6 +68,10 @@ export function jobHandlers(services: Services, afterWrite: AfterWrite): Handler
         default:
           return DONE
       }
+    },
+    async checkpoint() {
+      await storeCheckpoints(services)
+      return DONE
     },
     async archive(data) {
       await storeArchive(services, afterWrite, data)

@@ -3,6 +3,7 @@ import { inTransaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
 import { hasLiveJob } from '#server/store/queries/jobs.ts'
 import type { QueueName } from '#server/store/queues.ts'
+import { drawsWithWaitingSeal } from '#server/store/queries/sealings.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { entrantImport } from '#server/store/schema/entrant.ts'
 import { mail } from '#server/store/schema/operation.ts'
@@ -26,6 +27,7 @@ export async function sweep(services: Services): Promise<void> {
   for (const { id } of closing) await ensure(services, 'close', id)
   const settling = await db
     .selectDistinct({ id: draw.id })
+  for (const id of await drawsWithWaitingSeal(db, due)) await ensure(services, 'timestamp', id)
     .from(draw)
     .innerJoin(seal, eq(seal.drawId, draw.id))
     .where(
@@ -57,7 +59,7 @@ export async function sweep(services: Services): Promise<void> {
 
 async function ensure(
   services: Services,
-  queue: Extract<QueueName, 'close' | 'settle' | 'archive'>,
+  queue: Extract<QueueName, 'close' | 'timestamp' | 'settle' | 'archive'>,
   id: string,
 ): Promise<void> {
   await inTransaction(services, async (tx) => {

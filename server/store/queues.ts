@@ -7,6 +7,8 @@ export const QUEUES = {
   close: { retryLimit: 1000, retryDelay: 3, retryBackoff: false },
   /** Seals a long list. A refusal is not tried again: a promoter looks at it. */
   seal: { retryLimit: 2, retryDelay: 1, retryBackoff: false },
+  /** Asks for the timestamp of a seal that was made, and lets it count. */
+  timestamp: { retryLimit: 100_000, retryDelay: 3, retryBackoff: false },
   /** Settles one draw from its beacon's round on. */
   settle: { retryLimit: 100_000, retryDelay: 3, retryBackoff: false },
   /** Puts one draw's proof into the object store. */
@@ -33,6 +35,7 @@ export interface JobData {
   }
   readonly settle: { readonly draw: string }
   readonly archive: { readonly draw: string }
+  readonly timestamp: { readonly draw: string }
   readonly 'prepare-mail': {
     readonly draw: string
     readonly about: 'seal' | 'result' | 'notice'

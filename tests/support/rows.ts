@@ -107,6 +107,8 @@ export interface SealValues {
   readonly roundAt?: string
   readonly supersedes?: string | null
   readonly seedCommit?: string
+  /** The time of its timestamp; null: it has none, and does not count. By default the time of the seal. */
+  readonly timestampAt?: string | null
   /** Leaves the log without an entry of it. */
   readonly unlogged?: boolean
   readonly leaves?: readonly number[]
@@ -114,15 +116,18 @@ export interface SealValues {
   readonly tickets?: number
 }
 
-/** A seal with all that belongs to it; the bytes are any bytes. Returns its digest. */
+const SEAL_COLUMNS = `draw_id, digest, bytes, signature, terms, key_fingerprint, root, entrants, tickets, seed_commit,
+  beacon_chain, beacon_round, beacon_round_at, sealed_at, draw_at, supersedes, reason, added, removed, changed`
+
+/** A seal with all that belongs to it and a timestamp; the bytes are any bytes. Returns its digest. */
 export async function insertSeal(client: PoolClient | Pool, drawId: string, values: SealValues): Promise<string> {
   const bytes = randomBytes(40)
   const digest = createHash('sha256').update(bytes).digest('hex')
   const leaves = values.leaves ?? [3, 4]
   const { rows } = await client.query<{ id: string }>(
-    `insert into seal (draw_id, digest, bytes, signature, terms, key_fingerprint, root, entrants, tickets, seed_commit,
-       beacon_chain, beacon_round, beacon_round_at, sealed_at, draw_at, supersedes, reason)
-     values ($1, $2, $3, $4, E'Terms.\n', $5, $6, $7, $8, $9, $10, 7, $11, $12, $13, $14, $15) returning id`,
+    `insert into sealing (${SEAL_COLUMNS}, draw_version, made_at)
+     values ($1, $2, $3, $4, E'Terms.\n', $5, $6, $7, $8, $9, $10, 7, $11, $12, $13, $14, $15, $16, $16, $16, 1, now())
+     returning id`,
     [
       drawId,
       digest,
@@ -139,6 +144,7 @@ export async function insertSeal(client: PoolClient | Pool, drawId: string, valu
       values.drawAt,
       values.supersedes ?? null,
       values.supersedes ? 'The hall was flooded.' : null,
+      values.supersedes ? 0 : null,
     ],
   )
   const id = rows[0]?.id
@@ -162,6 +168,12 @@ export async function insertSeal(client: PoolClient | Pool, drawId: string, valu
       [id, leaf, `AAAAAAA${leaf + 2}`],
     )
   }
+  if (values.timestampAt === null) return digest
+  await client.query(
+    `insert into seal (id, ${SEAL_COLUMNS}, timestamp, timestamp_at, timestamp_authority)
+     select id, ${SEAL_COLUMNS}, '\\x30', $2, 'Somebody' from sealing where id = $1`,
+    [id, values.timestampAt ?? values.sealedAt],
+  )
   if (values.unlogged) return digest
   const supersedes = values.supersedes ?? null
   await insertLogEvent(client, drawId, supersedes === null ? 'sealed' : 'replaced', digest, supersedes)

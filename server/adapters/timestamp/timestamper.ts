@@ -35,8 +35,11 @@ export interface AuthorityHealth extends Health {
 
 /** Asks authorities for timestamps (RFC 3161). Never throws for what they do. */
 export interface Timestamper {
-  /** A timestamp over a SHA-256 digest, from the first authority that gives a good one. */
-  stamp(imprint: Uint8Array): Promise<StampAnswer>
+  /**
+   * A timestamp over a SHA-256 digest, from the first authority that gives a good one. `withinMs`: how long each may take,
+   * where that is less than usual.
+   */
+  stamp(imprint: Uint8Array, withinMs?: number): Promise<StampAnswer>
   /** What each authority gives today; a good answer is believed for some minutes, so that nobody is asked too often. */
   check(): Promise<readonly AuthorityHealth[]>
 }
@@ -61,12 +64,12 @@ export function createTimestamper(options: TimestamperOptions): Timestamper {
   const entropy = options.entropy ?? systemEntropy
   const known = new Map<string, { readonly health: AuthorityHealth; readonly until: number }>()
 
-  async function ask(url: string, imprint: Uint8Array): Promise<Stamped | AuthorityReason> {
+  async function ask(url: string, imprint: Uint8Array, withinMs = Infinity): Promise<Stamped | AuthorityReason> {
     const nonce = entropy.bytes(16)
     const answer = await askAuthority({
       url,
       request: timestampRequest({ imprint, nonce, certificates: true }),
-      timeoutMs: options.timeoutMs ?? 10_000,
+      timeoutMs: Math.min(withinMs, options.timeoutMs ?? 10_000),
       largestAnswer: MAX_RESPONSE_BYTES,
       fetch: options.fetch ?? fetch,
     })
@@ -84,10 +87,10 @@ export function createTimestamper(options: TimestamperOptions): Timestamper {
   }
 
   return {
-    async stamp(imprint) {
+    async stamp(imprint, withinMs) {
       const reasons: AuthorityReason[] = []
       for (const url of urls) {
-        const outcome = await ask(url, imprint)
+        const outcome = await ask(url, imprint, withinMs)
         if ('response' in outcome) return { kind: 'stamped', stamp: outcome }
         reasons.push(outcome)
       }

@@ -9,6 +9,7 @@ import { sealsOf } from '#server/store/queries/seals.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { wholeSecond } from '#server/time/instants.ts'
 import { readReason } from './draw-values.ts'
+import { discardWaitingSeal } from './discard-sealing.ts'
 import { lockDraw, loggedNames, requireState } from './lock-draw.ts'
 import { retire } from './put-seal.ts'
 import { refuseWhileSealing } from './sealing-job.ts'
@@ -28,6 +29,7 @@ export async function cancelDraw(
       throw invalid('title', `Type the title of the draw as it stands: ${row.title}`)
     }
     const reason = readReason(input.reason)
+    await discardWaitingSeal(tx, services, actor, row, 'the draw is cancelled.')
     // The database refuses this from the round's time on, by its own clock.
     await tx.db
       .update(draw)

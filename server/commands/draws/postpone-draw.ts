@@ -7,10 +7,13 @@ import { appendLog } from '#server/commands/log.ts'
 import { inTransaction, type Transaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
 import { sealingSeconds } from '#server/store/draw-problems.ts'
+import { waitingSealing } from '#server/store/queries/sealings.ts'
 import { sealInForce, sealsOf } from '#server/store/queries/seals.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { person } from '#server/store/schema/people.ts'
 import { instantOf } from '#server/time/instants.ts'
+import { AT_ONCE_MS, completeSealing } from './complete-sealing.ts'
+import { discardWaitingSeal } from './discard-sealing.ts'
 import { readLocalTime, readReason } from './draw-values.ts'
 import { lockDraw, type LockedDraw, loggedNames, requireState } from './lock-draw.ts'
 import { putSeal } from './put-seal.ts'
@@ -27,10 +30,10 @@ export interface PostponeInput {
 
 /**
  * Before the seal: changes the dates. After it: a new seal, with a new seed, blinding key and references, replaces the one
- * in force, whose seed is destroyed unopened. Refused from the beacon's round on.
+ * in force as soon as it has its timestamp; that one's seed is then destroyed unopened. Refused from the beacon's round on.
  */
 export async function postponeDraw(services: Services, actor: CommandActor, input: PostponeInput): Promise<void> {
-  await inTransaction(services, async (tx) => {
+  const replaced = await inTransaction(services, async (tx) => {
     const locked = await lockDraw(tx, input)
     const { row } = locked
     requireState(row, ['open', 'closed', 'sealed'], 'postpone it')
@@ -42,6 +45,7 @@ export async function postponeDraw(services: Services, actor: CommandActor, inpu
     if ((drawAt.getTime() - services.clock.now().getTime()) / 1000 < lead) {
       throw invalid('drawAt', `The draw must lie at least ${lead} seconds ahead. Choose a later time.`)
     }
+    await discardWaitingSeal(tx, services, actor, row, 'the draw is postponed.')
     if (row.state === 'sealed') {
       if (input.closesAt !== undefined) {
         throw invalid('closesAt', 'The list is sealed: only the draw time can move. Leave the closing time out.')
@@ -55,9 +59,15 @@ export async function postponeDraw(services: Services, actor: CommandActor, inpu
           tickets: row.ticketCount,
           postpone: { drawAt: instantOf(drawAt), reason },
         })
-      } else await replaceSeal(tx, services, actor, locked, drawAt, reason)
-    } else await moveDates(tx, services, actor, locked, drawAt, reason, input.closesAt)
+        return false
+      }
+      await replaceSeal(tx, services, actor, locked, drawAt, reason)
+      return true
+    }
+    await moveDates(tx, services, actor, locked, drawAt, reason, input.closesAt)
+    return false
   })
+  if (replaced) await completeSealing(services, { draw: input.draw, withinMs: AT_ONCE_MS })
 }
 
 /** The worker's part of a long replacement. */
@@ -78,8 +88,10 @@ export async function postponeLongList(
       .where(eq(person.id, input.actor))
     const locked = await lockDraw(tx, input)
     requireState(locked.row, ['sealed'], 'postpone it')
+    if (await waitingSealing(tx.db, input.draw)) return
     await replaceSeal(tx, services, row ?? null, locked, input.drawAt, input.reason)
   })
+  await completeSealing(services, { draw: input.draw })
 }
 
 async function moveDates(
@@ -122,11 +134,7 @@ async function replaceSeal(
       'From the time of the beacon round that the seal names nobody can stop, postpone or replace the draw.',
     )
   }
-  const { digest } = await putSeal(tx, services, locked, { drawAt, replaces: { seal: before, reason } })
-  await auditPostponing(tx, services, actor, locked, drawAt, reason, row.closesAt)
-  await appendLog(tx, services, { event: 'postponed', ...loggedNames(locked), note: reason })
-  // The new seal's mail tells of both, so no notice goes out besides.
-  await appendLog(tx, services, { event: 'replaced', ...loggedNames(locked), digest, supersedes: before.digest })
+  await putSeal(tx, services, locked, actor, { drawAt, replaces: { seal: before, reason } })
 }
 
 const auditPostponing = (

@@ -1,17 +1,17 @@
-import { and, eq, inArray, isNotNull } from 'drizzle-orm'
+import { and, inArray, isNotNull } from 'drizzle-orm'
 import { toHex } from '#shared/bytes/hex.ts'
 import { formatTime } from '#shared/bytes/time.ts'
 import { FORMAT, MIN_SEAL_LEAD } from '#shared/protocol/limits.ts'
 import { beaconFor, roundTime } from '#shared/protocol/networks.ts'
 import { sealBytes, seedCommitment, termsDigest, validateSeal } from '#shared/protocol/seal.ts'
+import type { CommandActor } from '#server/commands/actor.ts'
 import { refused } from '#server/commands/command-error.ts'
 import { copyRows } from '#server/commands/copy-rows.ts'
 import type { Transaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
 import { prizeRowsOf } from '#server/store/queries/office-draws.ts'
 import type { SealRow } from '#server/store/queries/seals.ts'
-import { draw } from '#server/store/schema/draw.ts'
-import { seal, sealSecret } from '#server/store/schema/seal.ts'
+import { sealing, sealSecret } from '#server/store/schema/seal.ts'
 import { instantOf, secondsOf, wholeSecond } from '#server/time/instants.ts'
 import { type CommittedList, commitList } from './commit-list.ts'
 import type { LockedDraw } from './lock-draw.ts'
@@ -26,16 +26,20 @@ export interface PutSealInput {
 export const seedContext = (sealDigest: string): string => `seal-seed:${sealDigest}`
 export const blindingKeyContext = (sealDigest: string): string => `seal-blinding-key:${sealDigest}`
 
+/** The worker leaves a new seal to whoever made it for so long, in milliseconds: they ask for its timestamp at once. */
+const HEAD_START = 3000
+
 /**
- * Makes, signs and stores a seal over the list of a locked draw, and makes the draw sealed (PROTOCOL section 3). New seed,
- * blinding key and references every time. Enqueues the settling at the beacon's round and the mails.
+ * Makes, signs and stores a seal over the list of a locked draw (PROTOCOL section 3). New seed, blinding key and references
+ * every time. It does not count yet: `completeSealing` asks for its timestamp, at once or as the job enqueued here.
  */
 export async function putSeal(
   tx: Transaction,
   services: Services,
   locked: LockedDraw,
+  actor: CommandActor,
   input: PutSealInput,
-): Promise<{ readonly digest: string; readonly version: number }> {
+): Promise<void> {
   const { row, organisation } = locked
   const seed = services.entropy.bytes(32)
   const blindingKey = services.entropy.bytes(32)
@@ -75,7 +79,7 @@ export async function putSeal(
   const digest = toHex(services.sha256(bytes))
   const roundAt = new Date(roundTime(beacon, beacon.round) * 1000)
   const [stored] = await tx.db
-    .insert(seal)
+    .insert(sealing)
     .values({
       drawId: row.id,
       digest,
@@ -94,8 +98,12 @@ export async function putSeal(
       drawAt: input.drawAt,
       supersedes: made.value.supersedes,
       reason: made.value.reason,
+      actorId: actor?.id ?? null,
+      drawVersion: row.version,
+      madeAt: services.clock.now(),
+      ...(input.replaces ? await changesSince(tx, input.replaces.seal.id, row.id) : {}),
     })
-    .returning({ id: seal.id })
+    .returning({ id: sealing.id })
   if (!stored) throw new Error('The seal was not written.')
   await tx.db.insert(sealSecret).values({
     sealId: stored.id,
@@ -103,12 +111,31 @@ export async function putSeal(
     blindingKey: services.secrets.seal(blindingKey, blindingKeyContext(digest)),
   })
   await storeLeaves(tx, stored.id, list)
-  const version = row.version + 1
-  await tx.db.update(draw).set({ state: 'sealed', sealedAt, drawAt: input.drawAt, version }).where(eq(draw.id, row.id))
-  if (input.replaces) await retire(tx, services, [input.replaces.seal.id])
-  await services.queue.enqueue(tx.client, 'settle', { draw: row.id }, { startAfter: roundAt })
-  await services.queue.enqueue(tx.client, 'prepare-mail', { draw: row.id, about: 'seal' })
-  return { digest, version }
+  const startAfter = new Date(services.clock.now().getTime() + HEAD_START)
+  await services.queue.enqueue(tx.client, 'timestamp', { draw: row.id }, { startAfter })
+}
+
+/** How the list differs from the one under an earlier seal: entrants are known by their rows, which keep their ids. */
+async function changesSince(
+  tx: Transaction,
+  sealId: number,
+  drawId: string,
+): Promise<{ readonly added: number; readonly removed: number; readonly changed: number }> {
+  const { rows } = await tx.client.query<{ added: number; removed: number; changed: number }>(
+    `select count(*) filter (where old.entrant_id is null)::int as added,
+       count(*) filter (where now.id is null)::int as removed,
+       count(*) filter (where old.entrant_id is not null and now.id is not null
+         and (old.tickets, old.label, old.name, old.contact, old.numbers)
+           is distinct from (now.tickets, now.label, now.name, now.contact, now.numbers))::int as changed
+     from (select p.entrant_id, l.tickets, p.label, p.name, p.contact, p.numbers
+       from sealed_leaf_person p join sealed_leaf l using (seal_id, leaf) where p.seal_id = $1) as old
+     full join (select e.id, e.tickets, p.label, p.name, concat_ws(', ', p.email, p.phone) as contact,
+         coalesce(p.numbers, '') as numbers
+       from entrant e left join entrant_person p on p.entrant_id = e.id where e.draw_id = $2) as now
+       on now.id = old.entrant_id`,
+    [sealId, drawId],
+  )
+  return rows[0] ?? { added: 0, removed: 0, changed: 0 }
 }
 
 /** Destroys the seeds of seals that will never be opened, and drops their mails that still wait. */

@@ -7,6 +7,7 @@ import { inTransaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { readLocalTime, readReason } from './draw-values.ts'
+import { discardWaitingSeal } from './discard-sealing.ts'
 import { lockDraw, loggedNames, requireState } from './lock-draw.ts'
 import { refuseWhileSealing } from './sealing-job.ts'
 
@@ -30,6 +31,7 @@ export async function reopenDraw(
       )
     }
     const reason = readReason(input.reason)
+    await discardWaitingSeal(tx, services, actor, row, 'the list takes entrants again.')
     await tx.db
       .update(draw)
       .set({ state: 'open', closedAt: null, closesAt, version: row.version + 1 })

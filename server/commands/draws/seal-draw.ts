@@ -1,14 +1,14 @@
 import { eq } from 'drizzle-orm'
 import type { CommandActor } from '#server/commands/actor.ts'
-import { audit } from '#server/commands/audit.ts'
 import { CommandError, refused } from '#server/commands/command-error.ts'
-import { appendLog } from '#server/commands/log.ts'
 import { inTransaction, type Transaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
 import { problemsOfSealing } from '#server/store/draw-problems.ts'
 import { factsOf, prizeRowsOf } from '#server/store/queries/office-draws.ts'
+import { waitingSealing } from '#server/store/queries/sealings.ts'
 import { person } from '#server/store/schema/people.ts'
-import { lockDraw, type LockedDraw, loggedNames, requireState } from './lock-draw.ts'
+import { AT_ONCE_MS, completeSealing } from './complete-sealing.ts'
+import { lockDraw, type LockedDraw, requireState } from './lock-draw.ts'
 import { putSeal } from './put-seal.ts'
 import { refuseWhileSealing, SEAL_AT_ONCE } from './sealing-job.ts'
 
@@ -20,23 +20,32 @@ export interface SealDrawInput {
   readonly tickets: number
 }
 
-/** Seals a closed list: at once, or as a job where it is long. */
+/**
+ * Seals a closed list: at once, or as a job where it is long. `sealing`: the seal does not count yet; the worker goes on,
+ * since the list is long or the timestamp authority does not answer.
+ */
 export async function sealDraw(
   services: Services,
   actor: CommandActor,
   input: SealDrawInput,
 ): Promise<{ readonly kind: 'sealed' | 'sealing' }> {
-  return inTransaction(services, async (tx) => {
+  const kind = await inTransaction(services, async (tx) => {
     const locked = await checkSealing(tx, services, input)
     await refuseWhileSealing(tx, input.draw)
+    if (await waitingSealing(tx.db, input.draw)) {
+      throw refused('The list is sealed, and its seal waits for its timestamp: there is nothing more to do.')
+    }
     if (input.entrants > SEAL_AT_ONCE && actor) {
       const { draw, version, entrants, tickets } = input
       await services.queue.enqueue(tx.client, 'seal', { draw, actor: actor.id, version, entrants, tickets })
-      return { kind: 'sealing' }
+      return 'sealing' as const
     }
-    await sealNow(tx, services, actor, locked)
-    return { kind: 'sealed' }
+    await putSeal(tx, services, locked, actor, { drawAt: locked.row.drawAt, replaces: null })
+    return 'made' as const
   })
+  if (kind === 'sealing') return { kind }
+  const outcome = await completeSealing(services, { draw: input.draw, withinMs: AT_ONCE_MS })
+  return { kind: outcome.kind === 'counts' ? 'sealed' : 'sealing' }
 }
 
 /** The worker's part of a long sealing. Everything is checked anew. */
@@ -50,8 +59,10 @@ export async function sealLongList(
       .from(person)
       .where(eq(person.id, input.actor))
     const locked = await checkSealing(tx, services, input)
-    await sealNow(tx, services, row ?? null, locked)
+    if (await waitingSealing(tx.db, input.draw)) return
+    await putSeal(tx, services, locked, row ?? null, { drawAt: locked.row.drawAt, replaces: null })
   })
+  await completeSealing(services, { draw: input.draw })
 }
 
 async function checkSealing(tx: Transaction, services: Services, input: SealDrawInput): Promise<LockedDraw> {
@@ -67,18 +78,4 @@ async function checkSealing(tx: Transaction, services: Services, input: SealDraw
     )
   }
   return locked
-}
-
-async function sealNow(tx: Transaction, services: Services, actor: CommandActor, locked: LockedDraw): Promise<void> {
-  const { row } = locked
-  const { digest } = await putSeal(tx, services, locked, { drawAt: row.drawAt, replaces: null })
-  await audit(tx, services, actor, {
-    action: 'draw.seal',
-    organisationId: row.organisationId,
-    drawId: row.id,
-    subjectId: digest,
-    sentence: `Sealed the list: ${row.entrantCount} entrants, ${row.ticketCount} tickets.`,
-    after: { digest, entrants: row.entrantCount, tickets: row.ticketCount, drawAt: row.drawAt },
-  })
-  await appendLog(tx, services, { event: 'sealed', ...loggedNames(locked), digest })
 }

@@ -1,5 +1,5 @@
 import { sql } from 'drizzle-orm'
-import { bigint, check, index, integer, jsonb, pgTable, primaryKey, text, uuid } from 'drizzle-orm/pg-core'
+import { bigint, boolean, check, index, integer, jsonb, pgTable, primaryKey, text, uuid } from 'drizzle-orm/pg-core'
 import { at, bytes } from './columns.ts'
 
 /** Who did what, append-only and without personal data: people are ids here, their names are in `audit_detail`. */
@@ -101,3 +101,37 @@ export const logCheckpoint = pgTable(
   },
   (t) => [check('log_checkpoint_size', sql`${t.size} >= 1`)],
 )
+
+/** A witness's cosignature of a checkpoint (C2SP tlog-cosignature), as the line that a note carries. Append-only. */
+export const logCosignature = pgTable(
+  'log_cosignature',
+  {
+    size: bigint({ mode: 'number' }).notNull(),
+    /** The witness's key as it is handed on: name, id and key. */
+    witness: text().notNull(),
+    line: text().notNull(),
+    /** The time that it states. */
+    at: at().notNull(),
+  },
+  (t) => [primaryKey({ columns: [t.size, t.witness] })],
+)
+
+/** How far each configured witness has followed the log, and what it said last. */
+export const logWitness = pgTable('log_witness', {
+  witness: text().primaryKey(),
+  /** The size of the last checkpoint that it cosigned; 0: none. */
+  size: bigint({ mode: 'number' }).notNull().default(0),
+  ok: boolean().notNull(),
+  detail: text().notNull(),
+  triedAt: at().notNull(),
+})
+
+/** Every key that the site has signed with, and when. */
+export const siteKey = pgTable('site_key', {
+  /** SHA-256 of its SubjectPublicKeyInfo DER, hex. */
+  fingerprint: text().primaryKey(),
+  publicKeyPem: text().notNull(),
+  since: at().notNull(),
+  /** When another key took its place; null: it signs. */
+  until: at(),
+})

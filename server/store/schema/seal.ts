@@ -3,35 +3,89 @@ import { bigint, check, index, integer, pgTable, primaryKey, text, unique, uuid 
 import { at, bytes } from './columns.ts'
 import { draw } from './draw.ts'
 
-/** A seal, as published (PROTOCOL section 3). Append-only. */
+/** What is in a seal's bytes, beside them: the same for one that waits and one that counts. */
+const sealColumns = () => ({
+  drawId: uuid()
+    .notNull()
+    .references(() => draw.id),
+  digest: text().notNull().unique(),
+  /** The JCS bytes that are signed, and the 64-byte Ed25519 signature. */
+  bytes: bytes().notNull(),
+  signature: bytes().notNull(),
+  /** terms.txt, whose digest the seal holds. */
+  terms: text().notNull(),
+  keyFingerprint: text().notNull(),
+  root: text().notNull(),
+  entrants: integer().notNull(),
+  tickets: bigint({ mode: 'number' }).notNull(),
+  seedCommit: text().unique(),
+  beaconChain: text(),
+  beaconRound: bigint({ mode: 'number' }),
+  beaconRoundAt: at(),
+  sealedAt: at().notNull(),
+  drawAt: at().notNull(),
+  supersedes: text(),
+  reason: text(),
+  /** Of a seal that replaces another: entrants whom only the new one has, only the old one, and both, but differently. */
+  added: integer(),
+  removed: integer(),
+  changed: integer(),
+})
+
+/**
+ * A seal as it was made and signed, with its leaves and secrets. It counts, and stands in `seal`, from the moment that an
+ * outside authority has put its timestamp on it; until then it can be discarded with all that belongs to it, and nobody
+ * outside has seen it. Never changed.
+ */
+export const sealing = pgTable(
+  'sealing',
+  {
+    id: bigint({ mode: 'number' }).primaryKey().generatedAlwaysAsIdentity(),
+    ...sealColumns(),
+    /** Who sealed, and the version of the draw that they saw. */
+    actorId: uuid(),
+    drawVersion: integer().notNull(),
+    madeAt: at().notNull(),
+  },
+  (t) => [
+    index('sealing_draw').on(t.drawId),
+    check('sealing_digest', sql`${t.digest} ~ '^[0-9a-f]{64}$' and ${t.digest} = encode(sha256(${t.bytes}), 'hex')`),
+    check('sealing_far_enough', sql`${t.drawAt} >= ${t.sealedAt} + interval '120 seconds'`),
+    check('sealing_replacement_has_reason', sql`(${t.supersedes} is null) = (${t.reason} is null)`),
+    check(
+      'sealing_replacement_has_counts',
+      sql`(${t.supersedes} is null) = (${t.added} is null) and (${t.added} is null) = (${t.removed} is null) and (${t.added} is null) = (${t.changed} is null)`,
+    ),
+  ],
+)
+
+/** How the waiting for a timestamp goes, for the office; goes with the sealing. */
+export const timestamping = pgTable('timestamping', {
+  sealingId: bigint({ mode: 'number' })
+    .primaryKey()
+    .references(() => sealing.id, { onDelete: 'cascade' }),
+  tries: integer().notNull(),
+  triedAt: at().notNull(),
+  /** What the authorities said last. */
+  detail: text().notNull(),
+})
+
+/** A seal, as published (PROTOCOL section 3), with its timestamp. Append-only. */
 export const seal = pgTable(
   'seal',
   {
-    id: bigint({ mode: 'number' }).primaryKey().generatedAlwaysAsIdentity(),
-    drawId: uuid()
-      .notNull()
-      .references(() => draw.id),
-    digest: text().notNull().unique(),
-    /** The JCS bytes that are signed, and the 64-byte Ed25519 signature. */
-    bytes: bytes().notNull(),
-    signature: bytes().notNull(),
-    /** terms.txt, whose digest the seal holds. */
-    terms: text().notNull(),
-    keyFingerprint: text().notNull(),
-    root: text().notNull(),
-    entrants: integer().notNull(),
-    tickets: bigint({ mode: 'number' }).notNull(),
-    seedCommit: text().unique(),
-    beaconChain: text(),
-    beaconRound: bigint({ mode: 'number' }),
-    beaconRoundAt: at(),
-    sealedAt: at().notNull(),
-    drawAt: at().notNull(),
-    supersedes: text().unique(),
-    reason: text(),
+    id: bigint({ mode: 'number' })
+      .primaryKey()
+      .references(() => sealing.id),
+    ...sealColumns(),
+    /** The TimeStampResp over the digest, the time that it states, and whose it is; seals from before timestamps have none. */
+    timestamp: bytes(),
+    timestampAt: at(),
+    timestampAuthority: text(),
   },
   (t) => [
     index('seal_draw').on(t.drawId, t.id),
+    unique('seal_supersedes_unique').on(t.supersedes),
     check('seal_digest', sql`${t.digest} ~ '^[0-9a-f]{64}$' and ${t.digest} = encode(sha256(${t.bytes}), 'hex')`),
     check('seal_signature', sql`length(${t.signature}) = 64`),
     check('seal_root', sql`${t.root} ~ '^[0-9a-f]{64}$'`),
@@ -43,6 +97,11 @@ export const seal = pgTable(
       sql`(${t.beaconRound} is null) = (${t.beaconChain} is null) and (${t.beaconRound} is null) = (${t.beaconRoundAt} is null)`,
     ),
     check('seal_beacon_not_before_draw', sql`${t.beaconRoundAt} >= ${t.drawAt} and ${t.beaconRound} >= 1`),
+    check(
+      'seal_timestamp_whole',
+      sql`(${t.timestamp} is null) = (${t.timestampAt} is null) and (${t.timestamp} is null) = (${t.timestampAuthority} is null)`,
+    ),
+    check('seal_timestamp_in_time', sql`${t.timestampAt} < ${t.drawAt}`),
   ],
 )
 
@@ -53,7 +112,7 @@ export const seal = pgTable(
 export const sealSecret = pgTable('seal_secret', {
   sealId: bigint({ mode: 'number' })
     .primaryKey()
-    .references(() => seal.id),
+    .references(() => sealing.id),
   seed: bytes(),
   blindingKey: bytes(),
   seedErasedAt: at(),
@@ -66,7 +125,7 @@ export const sealedLeaf = pgTable(
   {
     sealId: bigint({ mode: 'number' })
       .notNull()
-      .references(() => seal.id),
+      .references(() => sealing.id),
     leaf: integer().notNull(),
     tickets: bigint({ mode: 'number' }).notNull(),
     entryCommit: bytes().notNull(),
@@ -91,7 +150,7 @@ export const sealedLeafPerson = pgTable(
   {
     sealId: bigint({ mode: 'number' })
       .notNull()
-      .references(() => seal.id),
+      .references(() => sealing.id),
     leaf: integer().notNull(),
     entrantId: bigint({ mode: 'number' }).notNull(),
     reference: text().notNull(),

@@ -187,6 +187,6 @@ describe('seals, results and the log', () => {
     const seedCommit = 'cd'.repeat(32)
     const [first, second] = [await closedRow(database.pool), await closedRow(database.pool)]
     expect(await seal(first.drawId, { seedCommit })).toBe('taken')
-    expect(await seal(second.drawId, { seedCommit })).toContain('seal_seedCommit_unique')
+    expect(await seal(second.drawId, { seedCommit })).toContain('sealing_seedCommit_unique')
   })
 })
