@@ -25,9 +25,9 @@ export async function sweep(services: Services): Promise<void> {
     .from(draw)
     .where(and(eq(draw.state, 'open'), lte(draw.closesAt, due)))
   for (const { id } of closing) await ensure(services, 'close', id)
+  for (const id of await drawsWithWaitingSeal(db, due)) await ensure(services, 'timestamp', id)
   const settling = await db
     .selectDistinct({ id: draw.id })
-  for (const id of await drawsWithWaitingSeal(db, due)) await ensure(services, 'timestamp', id)
     .from(draw)
     .innerJoin(seal, eq(seal.drawId, draw.id))
     .where(
