@@ -5,13 +5,13 @@ import { loadConfig } from '#server/config/config.ts'
 import { createServices } from '#server/services.ts'
 import { email as emailSchema } from '#shared/schemas/values.ts'
 
-/** `tsx server/cli/create-administrator.ts ADDRESS NAME`: the way in for the first administrator of a new site. */
+/** `npm run administrator -- ADDRESS NAME`: the way in for the first administrator of a new site. */
 async function main(): Promise<number> {
   const [address = '', ...words] = process.argv.slice(2)
   const name = words.join(' ').trim()
   const email = emailSchema.safeParse(address)
   if (!email.success || name === '') {
-    console.error('Give an e-mail address and a name: create-administrator.ts ana@group.example "Ana Example"')
+    console.error('Give an e-mail address and a name: npm run administrator -- ana@group.example "Ana Example"')
     return 2
   }
   const services = createServices(loadConfig(), { name: 'evenpenny command', connections: 2 })

@@ -36,7 +36,7 @@ export async function sendPasswordReset(
   })
 }
 
-export async function sendLink(
+async function sendLink(
   tx: Transaction,
   services: Services,
   actor: CommandActor,
