@@ -8,14 +8,18 @@ import type { Transaction } from './transaction.ts'
 
 export interface Logged {
   readonly event: LogEvent
-  readonly organisation: { readonly id: string; readonly slug: string }
+  /** null: the site itself, in the entry of a checkpoint. */
+  readonly organisation: { readonly id: string; readonly slug: string } | null
   readonly draw: { readonly id: string; readonly slug: string } | null
-  /** Of the seal or result, hex. */
+  /** Of the seal, the result or the checkpoint, hex. */
   readonly digest?: string
   readonly supersedes?: string
   /** A public reason. */
   readonly note?: string
 }
+
+/** Stands for the site where a leaf names an organisation: no organisation's address looks like it. */
+const THE_SITE = '-'
 
 /** Appends to the site's log (PROTOCOL section 13); a reason is hashed with a fresh salt and kept beside it. */
 export async function appendLog(
@@ -34,7 +38,7 @@ export async function appendLog(
     format: 'evenpenny/1',
     kind: 'log',
     note,
-    organisation: logged.organisation.slug,
+    organisation: logged.organisation?.slug ?? THE_SITE,
     supersedes: logged.supersedes ?? null,
   } as const
   const [row] = await tx.db
@@ -44,7 +48,7 @@ export async function appendLog(
       at,
       event: leaf.event,
       drawId: logged.draw?.id ?? null,
-      organisationId: logged.organisation.id,
+      organisationId: logged.organisation?.id ?? null,
       draw: leaf.draw,
       organisation: leaf.organisation,
       digest: leaf.digest,

@@ -1,4 +1,5 @@
 import { and, eq, isNull, lt, lte, sql } from 'drizzle-orm'
+import { checkpointIsDue } from '#server/commands/put-checkpoint.ts'
 import { inTransaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
 import { hasLiveJob } from '#server/store/queries/jobs.ts'
@@ -7,6 +8,7 @@ import { drawsWithWaitingSeal } from '#server/store/queries/sealings.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { entrantImport } from '#server/store/schema/entrant.ts'
 import { mail } from '#server/store/schema/operation.ts'
+import { logCheckpoint } from '#server/store/schema/record.ts'
 import { archive, result } from '#server/store/schema/result.ts'
 import { seal } from '#server/store/schema/seal.ts'
 
@@ -44,6 +46,7 @@ export async function sweep(services: Services): Promise<void> {
     .leftJoin(archive, eq(archive.drawId, result.drawId))
     .where(and(isNull(archive.drawId), lte(result.drawnAt, due)))
   for (const { id } of unstored) await ensure(services, 'archive', id)
+  await ensureCheckpoint(services)
   await ensureSending(services, due)
   // An upload that nobody has touched for ten minutes has lost its process.
   await db
@@ -55,6 +58,16 @@ export async function sweep(services: Services): Promise<void> {
         lt(entrantImport.touchedAt, sql`clock_timestamp() - interval '10 minutes'`),
       ),
     )
+}
+
+/** The schedule of checkpoints: one after each batch of entries. */
+async function ensureCheckpoint(services: Services): Promise<void> {
+  const [unstored] = await services.db
+    .select({ size: logCheckpoint.size })
+    .from(logCheckpoint)
+    .where(isNull(logCheckpoint.storedAt))
+    .limit(1)
+  if (unstored || (await checkpointIsDue(services.db))) await ensureOne(services, 'checkpoint')
 }
 
 async function ensure(
@@ -76,11 +89,15 @@ async function ensureSending(services: Services, due: Date): Promise<void> {
     .from(mail)
     .where(and(eq(mail.state, 'queued'), lte(mail.nextAttemptAt, due)))
     .limit(1)
-  if (!waiting) return
+  if (waiting) await ensureOne(services, 'send-mail')
+}
+
+/** Enqueues a job of a kind that is for the whole site, unless one waits or runs. */
+async function ensureOne(services: Services, queue: 'send-mail' | 'checkpoint'): Promise<void> {
   await inTransaction(services, async (tx) => {
-    await tx.db.execute(sql`select pg_advisory_xact_lock(hashtext('sweep send-mail'))`)
+    await tx.db.execute(sql`select pg_advisory_xact_lock(hashtext(${`sweep ${queue}`}))`)
     const { rows } = await tx.db.execute(sql`
-      select from pgboss.job where name = 'send-mail' and state in ('created', 'retry', 'active') limit 1`)
-    if (rows.length === 0) await services.queue.enqueue(tx.client, 'send-mail', {})
+      select from pgboss.job where name = ${queue} and state in ('created', 'retry', 'active') limit 1`)
+    if (rows.length === 0) await services.queue.enqueue(tx.client, queue, {})
   })
 }

@@ -11,6 +11,8 @@ export const QUEUES = {
   timestamp: { retryLimit: 100_000, retryDelay: 3, retryBackoff: false },
   /** Settles one draw from its beacon's round on. */
   settle: { retryLimit: 100_000, retryDelay: 3, retryBackoff: false },
+  /** Signs the site's log and puts its checkpoints into the object store. */
+  checkpoint: { retryLimit: 2000, retryDelay: 3, retryBackoff: false },
   /** Puts one draw's proof into the object store. */
   archive: { retryLimit: 2000, retryDelay: 3, retryBackoff: false },
   /** Writes the rows of a draw's mails: its seal, its result, a notice. */
@@ -35,6 +37,7 @@ export interface JobData {
   }
   readonly settle: { readonly draw: string }
   readonly archive: { readonly draw: string }
+  readonly checkpoint: { readonly draw?: string }
   readonly timestamp: { readonly draw: string }
   readonly 'prepare-mail': {
     readonly draw: string

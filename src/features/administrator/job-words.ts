@@ -2,6 +2,7 @@ const WORDS: Record<string, string> = {
   close: 'Close a list whose time has come',
   settle: 'Settle a draw',
   archive: 'Keep a proof archive',
+  checkpoint: 'Sign the log and keep its checkpoint',
   seal: 'Seal a long list',
   'prepare-mail': 'Write the mails of a draw',
   'send-mail': 'Send the mails that are due',

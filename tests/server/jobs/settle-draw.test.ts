@@ -100,7 +100,11 @@ describe('settleDraw', () => {
     const receipts = await receiptsOf(site)
     expect(receipts).toHaveLength(2)
     const report = await checkPublicArchive(site, id, receipts)
-    expect(report).toMatchObject({ ok: true, result: { drawnAt: '2026-03-04T12:00:02Z' } })
+    expect(report).toMatchObject({
+      ok: true,
+      result: { drawnAt: '2026-03-04T12:00:02Z' },
+      verdict: { log: { origin: `${new URL(site.services.site.origin).host}/log` } },
+    })
     const page = await getDraw(site.services, slug)
     const winners = (page?.result?.picks ?? []).slice(0, 2).map(({ label }) => label)
     const kinds = new Map(rows.map(({ kind, entrantId }) => [`${kind} ${entrantId}`, kind]))
