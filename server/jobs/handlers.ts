@@ -13,7 +13,6 @@ import { sendMail } from './mail/send-mail.ts'
 import { settleDraw } from './settle-draw.ts'
 import { storeArchive } from './store-archive.ts'
 import { storeCheckpoints } from './store-checkpoints.ts'
-import { storeCheckpoints } from './store-checkpoints.ts'
 
 /** What came of a job: done, to be run again later, or given up for a reason that trying again does not mend. */
 export type JobOutcome =
@@ -69,10 +68,6 @@ export function jobHandlers(services: Services, afterWrite: AfterWrite): Handler
         default:
           return DONE
       }
-    },
-    async checkpoint() {
-      await storeCheckpoints(services)
-      return DONE
     },
     async checkpoint() {
       await storeCheckpoints(services)

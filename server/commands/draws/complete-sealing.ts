@@ -6,7 +6,7 @@ import { CommandError } from '#server/commands/command-error.ts'
 import { appendLog } from '#server/commands/log.ts'
 import { inTransaction, type Transaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
-import { type SealingRow, waitingSealing } from '#server/store/queries/sealings.ts'
+import { type SealingRow, sealingEnds, waitingSealing } from '#server/store/queries/sealings.ts'
 import { sealInForce, type SealRow, sealsOf } from '#server/store/queries/seals.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { person } from '#server/store/schema/people.ts'
@@ -45,8 +45,6 @@ export interface CompletionInput {
 
 /** Somebody waits in the office for so long, in milliseconds; then the worker goes on. */
 export const AT_ONCE_MS = 4000
-/** A timestamp has to be there so long before the draw, in milliseconds. */
-export const TIMESTAMP_LEAD_MS = 30_000
 
 /**
  * Asks an authority for the timestamp of a seal that waits for one, outside of any transaction; then, in one transaction,
@@ -96,7 +94,7 @@ function tooLate(services: Services, waiting: SealingRow, inForce: SealRow | nul
   if (inForce?.beaconRoundAt && now >= inForce.beaconRoundAt) {
     return 'No timestamp authority gave a timestamp before the time of the seal that was to be replaced: that one stands.'
   }
-  return now.getTime() > waiting.drawAt.getTime() - TIMESTAMP_LEAD_MS ? LATE : null
+  return now > sealingEnds(waiting.drawAt) ? LATE : null
 }
 
 async function discard(services: Services, waiting: SealingRow, reason: string): Promise<Completion> {

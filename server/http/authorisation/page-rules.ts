@@ -35,6 +35,7 @@ export const pageRules = {
 export const DRAW_FILES = [
   'seal.json',
   'seal.sig',
+  'seal.tsr',
   'entries.csv',
   'terms.txt',
   'site-key.pem',

@@ -56,7 +56,7 @@ export function mountDrawFiles(app: Express, parts: FileParts): void {
 const notPublic = (name: DrawFile) =>
   problem(
     404,
-    ['seal.json', 'seal.sig', 'entries.csv', 'terms.txt', 'site-key.pem'].includes(name)
+    ['seal.json', 'seal.sig', 'seal.tsr', 'entries.csv', 'terms.txt', 'site-key.pem'].includes(name)
       ? 'There is no such file yet: it appears when the draw is sealed.'
       : 'There is no such file yet: it appears when the draw is drawn.',
   )
@@ -66,6 +66,7 @@ async function find(parts: FileParts, slug: string, name: DrawFile): Promise<Fou
   switch (name) {
     case 'seal.json':
     case 'seal.sig':
+    case 'seal.tsr':
     case 'entries.csv':
     case 'terms.txt':
     case 'site-key.pem': {
@@ -73,6 +74,9 @@ async function find(parts: FileParts, slug: string, name: DrawFile): Promise<Fou
       if (!seal) return null
       if (name === 'seal.json') return { type: JSON_TYPE, tag: seal.digest, bytes: seal.bytes }
       if (name === 'seal.sig') return { type: BINARY, tag: `${seal.digest}.sig`, bytes: seal.signature }
+      if (name === 'seal.tsr') {
+        return seal.timestamp ? ofBytes('application/timestamp-reply', seal.timestamp) : null
+      }
       if (name === 'terms.txt') return ofBytes('text/plain; charset=utf-8', utf8(seal.terms))
       if (name === 'site-key.pem') return siteKey(parts, slug, seal.keyFingerprint)
       const chunks = () => entriesOf(db, seal.id)

@@ -13,6 +13,7 @@ import { localFromInstant } from '#server/time/local-time.ts'
 import { moneyOf, prizesOf } from './draw-page.ts'
 import { jobsOf } from './jobs.ts'
 import { mailCountsOf } from './mail-counts.ts'
+import { sealingOf } from './sealings.ts'
 import { sealInForce, sealsOf } from './seals.ts'
 import { officeWitnessesOf } from './witnesses.ts'
 
@@ -112,10 +113,11 @@ export async function getOfficeDraw(
     .where(eq(draw.id, input.draw))
   if (!found) return null
   const { draw: row, organisation: owner } = found
-  const [prizes, withEmail, seals, witnesses, mail, jobs, [stored], [settled]] = await Promise.all([
+  const [prizes, withEmail, seals, waiting, witnesses, mail, jobs, [stored], [settled]] = await Promise.all([
     prizesOf(db, row.id),
     withEmailOf(db, row.id),
     sealsOf(db, row.id),
+    sealingOf(db, row.id),
     officeWitnessesOf(db, row.id),
     mailCountsOf(db, row.id),
     jobsOf(db, row.id),
@@ -157,10 +159,11 @@ export async function getOfficeDraw(
     sealedAt: instantOrNull(row.sealedAt),
     drawnAt: instantOrNull(row.drawnAt),
     sealDigest: inForce?.digest ?? null,
+    sealing: waiting,
     resultDigest: settled?.digest ?? null,
     beaconRoundAt: instantOrNull(inForce?.beaconRoundAt ?? null),
     ...witnesses,
-    may: mayOf(row, input.rights, problems, inForce?.beaconRoundAt ?? null, now),
+    may: mayOf(row, input.rights, problems, inForce?.beaconRoundAt ?? null, waiting !== null, now),
     problems,
     mail,
     jobs,
@@ -181,6 +184,7 @@ function mayOf(
   rights: DrawRights,
   problems: OfficeDraw['problems'],
   roundAt: Date | null,
+  waiting: boolean,
   now: Date,
 ): OfficeDraw['may'] {
   const { state } = row
@@ -192,7 +196,7 @@ function mayOf(
     open: rights.run && state === 'draft' && problems.open.length === 0,
     close: rights.run && state === 'open',
     reopen: rights.run && state === 'closed',
-    seal: rights.run && state === 'closed' && problems.seal.length === 0,
+    seal: rights.run && state === 'closed' && !waiting && problems.seal.length === 0,
     replaceSeal: rights.run && beforeRound,
     postpone: rights.run && (state === 'open' || state === 'closed' || beforeRound),
     cancel: rights.run && (unsealed || beforeRound),

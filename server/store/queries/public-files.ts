@@ -18,6 +18,7 @@ export async function publishedSeal(db: Database, slug: string) {
       digest: seal.digest,
       bytes: seal.bytes,
       signature: seal.signature,
+      timestamp: seal.timestamp,
       terms: seal.terms,
       keyFingerprint: seal.keyFingerprint,
     })

@@ -1,6 +1,8 @@
 import { and, eq, sql } from 'drizzle-orm'
 import type { Database } from '#server/store/database.ts'
 import { sealing, timestamping } from '#server/store/schema/seal.ts'
+import { instantOf, instantOrNull } from '#server/time/instants.ts'
+import type { OfficeDraw } from '#shared/schemas/api/office.ts'
 
 export type SealingRow = typeof sealing.$inferSelect
 
@@ -13,10 +15,26 @@ export async function waitingSealing(db: Database, drawId: string): Promise<Seal
   return row ?? null
 }
 
-/** How the waiting for its timestamp goes; null before the first try has failed. */
-export async function timestampingOf(db: Database, sealingId: number) {
-  const [row] = await db.select().from(timestamping).where(eq(timestamping.sealingId, sealingId))
-  return row ?? null
+/** A timestamp has to be there so long before the draw, in milliseconds. */
+const TIMESTAMP_LEAD_MS = 30_000
+
+/** Until when a seal for a draw time waits for its timestamp. */
+export const sealingEnds = (drawAt: Date): Date => new Date(drawAt.getTime() - TIMESTAMP_LEAD_MS)
+
+/** How the waiting goes, for the office; null where no seal waits. */
+export async function sealingOf(db: Database, drawId: string): Promise<OfficeDraw['sealing']> {
+  const waiting = await waitingSealing(db, drawId)
+  if (!waiting) return null
+  const [noted] = await db.select().from(timestamping).where(eq(timestamping.sealingId, waiting.id))
+  return {
+    replaces: waiting.supersedes,
+    drawAt: instantOf(waiting.drawAt),
+    madeAt: instantOf(waiting.madeAt),
+    tries: noted?.tries ?? 0,
+    triedAt: instantOrNull(noted?.triedAt ?? null),
+    detail: noted?.detail ?? '',
+    until: instantOf(sealingEnds(waiting.drawAt)),
+  }
 }
 
 /** Draws with a seal that has waited since before `due`. */

@@ -7,6 +7,7 @@ import type { Seal } from '#shared/protocol/seal-types.ts'
 import { formatTime } from '#shared/bytes/time.ts'
 import type { Database } from '#server/store/database.ts'
 import { seal } from '#server/store/schema/seal.ts'
+import { instantOf } from '#server/time/instants.ts'
 
 export type SealRow = typeof seal.$inferSelect
 
@@ -51,5 +52,13 @@ export function presentSeal(row: SealRow): SealView {
     keyFingerprint: parsed.key,
     supersedes: parsed.supersedes,
     reason: parsed.reason,
+    timestamp:
+      row.timestampAt && row.timestampAuthority !== null
+        ? { at: instantOf(row.timestampAt), authority: row.timestampAuthority }
+        : null,
+    changes:
+      row.added !== null && row.removed !== null && row.changed !== null
+        ? { added: row.added, removed: row.removed, changed: row.changed }
+        : null,
   }
 }

@@ -108,6 +108,20 @@ export const officeDraw = z.object({
   sealedAt: instant.nullable(),
   drawnAt: instant.nullable(),
   sealDigest: hex32.nullable(),
+  /** A seal that was made and waits for the timestamp from which on it counts: the first one, or one that replaces another. */
+  sealing: z
+    .object({
+      replaces: hex32.nullable(),
+      drawAt: instant,
+      madeAt: instant,
+      /** Tries that gave no timestamp, the last one, and what the authorities said. */
+      tries: z.int(),
+      triedAt: instant.nullable(),
+      detail: z.string(),
+      /** Without a timestamp by then the seal is discarded. */
+      until: instant,
+    })
+    .nullable(),
   /** What a witness confirms after the draw. */
   resultDigest: hex32.nullable(),
   /** From the beacon's round on nobody can postpone, cancel or replace. */

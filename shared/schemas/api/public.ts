@@ -70,6 +70,10 @@ export const sealView = z.object({
   keyFingerprint: hex32,
   supersedes: hex32.nullable(),
   reason: z.string().nullable(),
+  /** When an outside authority saw the seal, by its own clock; null for seals from before the site asked for timestamps. */
+  timestamp: z.object({ at: instant, authority: z.string() }).nullable(),
+  /** How the list differs from that of the seal that this one replaces, in entrants. */
+  changes: z.object({ added: z.int(), removed: z.int(), changed: z.int() }).nullable(),
 })
 export type SealView = z.infer<typeof sealView>
 

@@ -4,6 +4,7 @@ const WORDS: Record<string, string> = {
   archive: 'Keep a proof archive',
   checkpoint: 'Sign the log and keep its checkpoint',
   seal: 'Seal a long list',
+  timestamp: 'Get the timestamp of a seal',
   'prepare-mail': 'Write the mails of a draw',
   'send-mail': 'Send the mails that are due',
 }

@@ -12,6 +12,7 @@ const SEALED: readonly DrawFile[] = [
   { name: 'terms.txt', what: 'The terms as published' },
   { name: 'site-key.pem', what: 'The public key that signs' },
 ]
+const STAMP: DrawFile = { name: 'seal.tsr', what: 'The seal’s timestamp, by somebody other than this site (RFC 3161)' }
 const DRAWN: readonly DrawFile[] = [
   { name: 'result.json', what: 'The result, the very bytes that were signed' },
   { name: 'result.sig', what: 'Its signature' },
@@ -23,6 +24,7 @@ const DRAWN: readonly DrawFile[] = [
 export function drawFiles(draw: Pick<DrawPage, 'seal' | 'result'>): readonly DrawFile[] {
   return [
     ...(draw.seal ? SEALED : []),
+    ...(draw.seal?.timestamp ? [STAMP] : []),
     ...(draw.result ? DRAWN : []),
     ...(draw.result?.archive ? [{ name: 'proof.zip', what: 'All of them in one, with the check' }] : []),
   ]

@@ -86,7 +86,7 @@ describe('the files beside a draw', () => {
   it('are not there before the seal, and those of the result not before the draw', async () => {
     const closed = await slugOf(await closedRow(database.pool))
     const sealed = await slugOf(await sealedRow(database.pool))
-    for (const file of ['seal.json', 'seal.sig', 'entries.csv', 'terms.txt', 'site-key.pem']) {
+    for (const file of ['seal.json', 'seal.sig', 'seal.tsr', 'entries.csv', 'terms.txt', 'site-key.pem']) {
       const before = await request(app).get(`/draws/${closed}/${file}`)
       expect(before.status).toBe(404)
       expect(before.type).toBe('application/problem+json')
@@ -111,6 +111,9 @@ describe('the files beside a draw', () => {
     ).toBe(row.digest)
     expect(seal.headers['content-length']).toBe('40')
     expect(((await request(app).get(`/draws/${slug}/seal.sig`).responseType('blob')).body as Buffer).length).toBe(64)
+    const timestamp = await request(app).get(`/draws/${slug}/seal.tsr`).responseType('blob')
+    expect(timestamp.headers['content-type']).toBe('application/timestamp-reply')
+    expect((timestamp.body as Buffer).toString()).toBe('0')
     const entries = await request(app).get(`/draws/${slug}/entries.csv`).responseType('blob')
     expect((entries.body as Buffer).toString()).toMatch(/^tickets,entry_commit\n3,[0-9a-f]{64}\n4,[0-9a-f]{64}\n$/)
     expect(entries.headers['content-type']).toBe('text/csv; charset=utf-8; header=present')

@@ -125,6 +125,7 @@ const TABLE: Record<string, readonly [keyof typeof WHO, number]> = {
   // Files.
   'GET /draws/:slug/seal.json': ['everybody', 404],
   'GET /draws/:slug/seal.sig': ['everybody', 404],
+  'GET /draws/:slug/seal.tsr': ['everybody', 404],
   'GET /draws/:slug/entries.csv': ['everybody', 404],
   'GET /draws/:slug/terms.txt': ['everybody', 404],
   'GET /draws/:slug/site-key.pem': ['everybody', 404],

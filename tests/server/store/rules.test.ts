@@ -260,7 +260,7 @@ describe('what is sealed', () => {
   })
 
   it.each([
-    ['less than 120 seconds ahead', '2026-01-01T12:01:59Z', '2026-01-01T12:01:59Z', 'seal_far_enough'],
+    ['less than 120 seconds ahead', '2026-01-01T12:01:59Z', '2026-01-01T12:01:59Z', 'sealing_far_enough'],
     ['with a round before the draw', '2090-01-01T12:00:00Z', '2090-01-01T11:59:59Z', 'seal_beacon_not_before_draw'],
   ])('is not %s', async (_name, drawAt, roundAt, constraint) => {
     const { drawId } = await closedRow(database.pool, { drawAt })
@@ -278,6 +278,65 @@ describe('what is sealed', () => {
       await client.query(`update draw set state = 'sealed', sealed_at = $2 where id = $1`, [drawId, values.sealedAt])
     })
     expect((await refusal(late)).message).toBe('The draw time has come before the seal was complete.')
+  })
+
+  it('counts only with a timestamp, as the very seal that was made', async () => {
+    const { drawId } = await closedRow(database.pool)
+    const values = { sealedAt: '2026-01-01T12:00:00Z', drawAt: '2090-01-01T12:00:00Z', timestampAt: null }
+    await transaction(database.pool, (client) => insertSeal(client, drawId, values))
+    const again = transaction(database.pool, (client) => insertSeal(client, drawId, values))
+    expect((await refusal(again)).message).toBe('A seal of this draw waits for its timestamp already.')
+    const columns = `draw_id, digest, bytes, signature, terms, key_fingerprint, entrants, tickets, seed_commit, beacon_chain,
+      beacon_round, beacon_round_at, sealed_at, draw_at`
+    const count = (root: string, stamp: string) =>
+      query(
+        `insert into seal (id, ${columns}, root, timestamp, timestamp_at, timestamp_authority)
+         select id, ${columns}, ${root}, ${stamp} from sealing where draw_id = $1`,
+        [drawId],
+      )
+    const stamp = `'\\x30', '2026-01-01T12:00:00Z', 'Somebody'`
+    expect((await refusal(count('root', 'null, null, null'))).message).toBe(
+      'A seal counts from its timestamp on: it has none.',
+    )
+    expect((await refusal(count(`repeat('a', 64)`, stamp))).message).toBe(
+      'A seal that counts is the one that was made.',
+    )
+    expect(await refusal(count('root', `'\\x30', '2090-01-01T12:00:00Z', 'Somebody'`))).toMatchObject({
+      constraint: 'seal_timestamp_in_time',
+    })
+    expect((await refusal(count('root', stamp))).message).toBe('A seal makes its draw sealed.')
+  })
+
+  it('can be discarded whole while it waits for its timestamp, and not changed; and not at all once it counts', async () => {
+    const waiting = await closedRow(database.pool)
+    await transaction(database.pool, (client) =>
+      insertSeal(client, waiting.drawId, {
+        sealedAt: '2026-01-01T12:00:00Z',
+        drawAt: '2090-01-01T12:00:00Z',
+        timestampAt: null,
+      }),
+    )
+    const ofSealing = 'in (select id from sealing where draw_id = $1)'
+    const deletes = [
+      `delete from sealed_leaf_person where seal_id ${ofSealing}`,
+      `delete from sealed_leaf where seal_id ${ofSealing}`,
+      `delete from seal_secret where seal_id ${ofSealing}`,
+      'delete from sealing where draw_id = $1',
+    ]
+    for (const change of [`update sealing set root = repeat('a', 64) where draw_id = $1`, 'truncate sealing cascade']) {
+      const values = change.includes('$1') ? [waiting.drawId] : []
+      expect((await refusal(query(change, values))).message).toMatch(/are never changed or deleted/)
+    }
+    const leaf = `insert into sealed_leaf select id, 2, 1, sha256('1'), sha256('2'), sha256('3') from sealing where draw_id = $1`
+    expect((await refusal(query(leaf, [waiting.drawId]))).message).toBe('Nothing is added to a list that is sealed.')
+    const counting = await sealedRow(database.pool)
+    for (const statement of deletes.slice(1)) {
+      expect((await refusal(query(statement, [counting.drawId]))).message, statement).toMatch(
+        /never changed or deleted/,
+      )
+    }
+    for (const statement of deletes) await query(statement, [waiting.drawId])
+    expect((await query('select from sealing where draw_id = $1', [waiting.drawId])).rowCount).toBe(0)
   })
 
   it('is replaced only by a seal that names it', async () => {

@@ -81,6 +81,7 @@ export function officeDraw(changes: Partial<OfficeDraw> = {}): OfficeDraw {
     sealedAt: null,
     drawnAt: null,
     sealDigest: null,
+    sealing: null,
     resultDigest: null,
     beaconRoundAt: null,
     witnesses: [],

@@ -145,6 +145,8 @@ export function sealView(tickets: readonly number[], prizes: readonly Prize[], o
     keyFingerprint: hex('key'),
     supersedes: null,
     reason: null,
+    timestamp: { at: '2026-06-16T17:04:12Z', authority: 'Northgate Timestamps' },
+    changes: null,
     ...over,
   }
 }

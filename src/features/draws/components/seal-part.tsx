@@ -1,6 +1,7 @@
-import type { DrawPage } from '#shared/schemas/api/public.ts'
+import type { DrawPage, SealView } from '#shared/schemas/api/public.ts'
 import { CopyButton } from '#src/ui/copy-button.tsx'
 import { Digest, digestGroups } from '#src/ui/digest.tsx'
+import { countOf, formatNumber } from '#src/ui/format-number.ts'
 import { formatClock, formatMoment, wallClock } from '#src/ui/format-time.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Part } from '#src/ui/page.tsx'
@@ -31,6 +32,12 @@ export function SealPart({ draw }: { readonly draw: DrawPage }) {
             The edge shows the same 64 digits: one reed each, the longer the higher. It helps the eye; only the digits
             prove anything. <CopyButton value={seal.digest} what="the seal" text="Copy the digest" />
           </div>
+          {seal.timestamp ? (
+            <p className="mt-unit">
+              Timestamped by {seal.timestamp.authority} on {formatMoment(seal.timestamp.at, draw.timeZone, true)}. That
+              is somebody other than this site: the seal was there by then.
+            </p>
+          ) : null}
           <div className="note mt-unit">
             <Digest label="Signed with the site’s key" value={seal.keyFingerprint} what="the key’s fingerprint" />
           </div>
@@ -57,6 +64,15 @@ export function SealPart({ draw }: { readonly draw: DrawPage }) {
         <Link plain to={`/draws/${draw.slug}/site-key.pem`}>
           site-key.pem
         </Link>
+        {seal.timestamp ? (
+          <>
+            ,{' '}
+            <Link plain to={`/draws/${draw.slug}/seal.tsr`}>
+              seal.tsr
+            </Link>{' '}
+            (the timestamp)
+          </>
+        ) : null}
         . The list shows ticket counts and no names.
       </p>
     </Part>
@@ -80,6 +96,14 @@ export function EarlierSealsPart({ draw }: { readonly draw: DrawPage }) {
               {chain[index + 1]?.reason ? (
                 <p className="mt-0">Why it was replaced: “{chain[index + 1]?.reason}”</p>
               ) : null}
+              {chain[index + 1]?.changes ? (
+                <p className="mt-0">{changeWords(chain[index + 1]?.changes ?? null)}</p>
+              ) : null}
+              {old.timestamp ? (
+                <p className="note">
+                  Timestamped by {old.timestamp.authority} on {formatMoment(old.timestamp.at, draw.timeZone, true)}.
+                </p>
+              ) : null}
               <div className="note">
                 <Digest value={old.digest} what={`seal ${index + 1}`} />
               </div>
@@ -89,6 +113,19 @@ export function EarlierSealsPart({ draw }: { readonly draw: DrawPage }) {
       </ul>
     </Part>
   )
+}
+
+/** How the list that came next differs, in entrants. */
+export function changeWords(changes: SealView['changes']): string {
+  if (!changes) return ''
+  const { added, removed, changed } = changes
+  if (added + removed + changed === 0) return 'The list stayed as it was.'
+  const parts = [
+    `${countOf(added, 'entrant')} added`,
+    `${formatNumber(removed)} removed`,
+    `${formatNumber(changed)} changed`,
+  ]
+  return `In the list that came next: ${parts.join(', ')}.`
 }
 
 export function AreYouInPart() {

@@ -36,6 +36,7 @@ export const officeDrawQuery = (api: ApiClient, draw: string) =>
 /** How often the office asks again: often while a job runs or a result is due, seldom otherwise. */
 export function drawInterval(draw: OfficeDraw): number | false {
   const now = Date.parse(draw.now)
+  if (draw.sealing) return BUSY
   // A job whose time has come begins within a second or two.
   if (draw.jobs.some(({ state, at }) => state === 'running' || (state === 'waiting' && Date.parse(at) <= now)))
     return BUSY

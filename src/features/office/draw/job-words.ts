@@ -12,6 +12,7 @@ const TITLES: Record<string, string> = {
   settle: 'Settling the draw',
   archive: 'Keeping the proof archive',
   seal: 'Sealing the list',
+  timestamp: 'Getting the seal’s timestamp',
   close: 'Closing the list',
   'prepare-mail': 'Writing the mails',
   'send-mail': 'Sending the mails',

@@ -2,6 +2,7 @@ import type { OfficeDraw } from '#shared/schemas/api/office.ts'
 import { ButtonLink } from '#src/ui/button.tsx'
 import { formatMoment } from '#src/ui/format-time.ts'
 import { Part } from '#src/ui/page.tsx'
+import { isBeingSealed } from './sealing.ts'
 import { drawPath, type Step } from '../paths.ts'
 import { useRole } from '../use-role.ts'
 
@@ -37,6 +38,13 @@ export function nextOf(draw: OfficeDraw): Next {
         action: 'Look through the list',
       }
     case 'closed':
+      if (isBeingSealed(draw)) {
+        return {
+          words: 'The list is being sealed. There is nothing to do meanwhile.',
+          to: 'seal',
+          action: 'See how far it is',
+        }
+      }
       return { words: 'The list is closed. Look through it, then seal it.', to: 'seal', action: 'Go to the seal' }
     case 'sealed':
       return {

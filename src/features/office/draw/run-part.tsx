@@ -4,12 +4,11 @@ import { useSubmit } from '#src/lib/use-submit.ts'
 import { Button } from '#src/ui/button.tsx'
 import { ErrorSummary } from '#src/ui/error-summary.tsx'
 import { TextArea, TextField } from '#src/ui/field.tsx'
-import { formatNumber } from '#src/ui/format-number.ts'
 import { zoneName } from '#src/ui/format-time.ts'
-import { Notice } from '#src/ui/notice.tsx'
 import { Part } from '#src/ui/page.tsx'
 import { useKeepDraw } from '../api/queries.ts'
-import { isBeingSealed } from './sealing.ts'
+import { isBeingMade } from './sealing.ts'
+import { SealingNotice } from './sealing-notice.tsx'
 
 type Action = 'close' | 'reopen' | 'postpone' | 'cancel'
 
@@ -26,20 +25,21 @@ export function RunPart({ draw }: { readonly draw: OfficeDraw }) {
     ] as const
   ).filter(([, allowed]) => allowed)
   if (actions.length === 0) return null
-  if (isBeingSealed(draw)) {
+  if (isBeingMade(draw)) {
     return (
       <Part title="Change its course">
-        <Notice title={draw.state === 'sealed' ? 'The new seal is being made' : 'The list is being sealed'}>
-          <p role="status">
-            A long list takes a moment: a commitment is made for each of its {formatNumber(draw.counts.entrants)}{' '}
-            entrants. This page shows the seal as soon as it stands; you can leave it meanwhile.
-          </p>
-        </Notice>
+        <SealingNotice draw={draw} />
       </Part>
     )
   }
   return (
     <Part title="Change its course" note="Only the promoter. Each is public, with its reason and time.">
+      {draw.sealing ? (
+        <div className="mb-unit-2">
+          <SealingNotice draw={draw} />
+          <p className="note mt-unit">Whatever you choose here discards the seal that waits.</p>
+        </div>
+      ) : null}
       <p className="buttons">
         {actions.map(([action, , words]) => (
           <Button

@@ -14,13 +14,13 @@ import { Figures } from '#src/ui/figures.tsx'
 import { formatNumber } from '#src/ui/format-number.ts'
 import { formatMoment } from '#src/ui/format-time.ts'
 import { Link } from '#src/ui/link.tsx'
-import { Notice } from '#src/ui/notice.tsx'
 import { Facts, Part } from '#src/ui/page.tsx'
 import { Failure, Skeleton } from '#src/ui/states.tsx'
 import { sealSummaryQuery, useKeepDraw } from '../api/queries.ts'
 import { useRole } from '../use-role.ts'
 import { RULE_WORDS } from './draw-fields.tsx'
 import { isBeingSealed } from './sealing.ts'
+import { SealingNotice } from './sealing-notice.tsx'
 import { useDraw } from './use-draw.ts'
 
 type Summary = ResponseOf<typeof getSealSummary>
@@ -40,12 +40,7 @@ export function Component() {
       <Head title={`Seal: ${draw.title}`} description="What the seal fixes, and its confirmation." />
       {isBeingSealed(draw) ? (
         <Part title="The seal">
-          <Notice title="The list is being sealed">
-            <p role="status">
-              A long list takes a moment: a commitment is made for each of its {formatNumber(draw.counts.entrants)}{' '}
-              entrants. This page shows the seal as soon as it stands; you can leave it meanwhile.
-            </p>
-          </Notice>
+          <SealingNotice draw={draw} />
         </Part>
       ) : summary ? (
         <Prepare draw={draw} summary={summary} />
@@ -195,6 +190,11 @@ function Sealed({ draw, digest }: { readonly draw: OfficeDraw; readonly digest: 
   return (
     <>
       <Head title={`Seal: ${draw.title}`} description="The seal in force." />
+      {isBeingSealed(draw) ? (
+        <Part title="A new seal">
+          <SealingNotice draw={draw} />
+        </Part>
+      ) : null}
       <Part title="The seal">
         <p className="measure">
           The list is sealed{draw.sealedAt ? `, ${formatMoment(draw.sealedAt, draw.timeZone)}` : ''}.{' '}
