@@ -9,6 +9,7 @@ import { endpointRules } from '#server/http/authorisation/rules.ts'
 import type { RequestContext } from '#server/http/endpoints/context.ts'
 import { mountEndpoints } from '#server/http/endpoints/mount.ts'
 import { createRegistry } from '#server/http/endpoints/registry.ts'
+import { mountCheckPage } from '#server/http/files/check-page.ts'
 import { mountDrawFiles } from '#server/http/files/draw-files.ts'
 import { LockedArchives } from '#server/http/files/locked-archives.ts'
 import { mountSiteFiles } from '#server/http/files/site-files.ts'
@@ -99,6 +100,7 @@ export function createSite(parts: SiteParts): SiteApp {
   app.use(refuseCrossSiteWrites({ origin: config.origin }))
   app.use(compression({ threshold: 1024 }))
   mountStaticFiles(app, parts.build)
+  mountCheckPage(app, parts.build)
   mountSiteFiles(app, { db: services.db, origin: config.origin, version: parts.version })
   mountDrawFiles(app, { db: services.db, keys: services.signing, archives })
 

@@ -54,6 +54,7 @@ export const fileRules: Readonly<Record<string, Rule>> = Object.fromEntries(
   [
     ...DRAW_FILES.map((name) => `/draws/:slug/${name}`),
     ...FIXED_FILES.map((name) => `/${name}`),
+    '/check.html',
     '/healthz',
     '/robots.txt',
     '/sitemap.xml',

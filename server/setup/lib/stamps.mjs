@@ -57,7 +57,7 @@ const BUILD_SOURCES = [
   'vite.config.ts',
   'tsconfig.json',
 ]
-const BUILD_RESULTS = ['build/client', 'build/ssr']
+const BUILD_RESULTS = ['build/client', 'build/ssr', 'build/check-page']
 
 /**
  * Whether the site must be built anew: by the content of its sources, as times tell nothing after a checkout.

@@ -1,6 +1,9 @@
 import { useSuspenseQuery } from '@tanstack/react-query'
 import { useParams, type LoaderFunctionArgs } from 'react-router'
 import type { DrawPage } from '#shared/schemas/api/public.ts'
+import { BEYOND_ANY_CHECK } from '#shared/protocol/check/verdict.ts'
+import { CheckPanel } from '#src/features/check/components/check-panel.tsx'
+import { siteWorker } from '#src/features/check/site-worker.ts'
 import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
@@ -9,7 +12,6 @@ import { CopyButton } from '#src/ui/copy-button.tsx'
 import { Digest } from '#src/ui/digest.tsx'
 import { formatBytes } from '#src/ui/format-number.ts'
 import { Link } from '#src/ui/link.tsx'
-import { Notice } from '#src/ui/notice.tsx'
 import { Part, Title } from '#src/ui/page.tsx'
 import { drawQuery } from './api/get-draw.ts'
 import { checkCommand } from './check-command.ts'
@@ -48,24 +50,31 @@ export function Check({ draw }: { readonly draw: DrawPage }) {
           </p>
         }
       />
-      {seal && result ? <ByCommand draw={draw} seal={seal} /> : <NothingYet draw={draw} />}
+      {seal && result ? (
+        <>
+          <CheckPanel
+            createWorker={siteWorker}
+            archive={result.archive ? { url: `/draws/${draw.slug}/proof.zip`, bytes: result.archive.bytes } : null}
+            publishedKey={seal.keyFingerprint}
+            demo={draw.demo}
+          />
+          <ByCommand draw={draw} seal={seal} />
+        </>
+      ) : (
+        <NothingYet draw={draw} />
+      )}
+      <WithoutUs />
       <Files draw={draw} />
-      <Part title="What it shows">
-        <ol className="dashes measure">
-          <li>The archive is whole, and both signatures are by the key whose fingerprint you gave.</li>
-          <li>The list in the archive is the list that was sealed: its count, its tickets, its Merkle root.</li>
-          <li>The secret that was opened is the one promised in the seal, and the beacon’s round is genuine.</li>
-          <li>Every coin of every pick follows from the flips, and leads to the entrant who was announced.</li>
-        </ol>
-        <div className="mt-unit-2">
-          <Notice title="What no check can show">
-            <p>
-              That every ticket sold was entered, or that the people in the list exist. Only the entrants can: each has
-              a receipt that proves their tickets are in the sealed list. Nor does the arithmetic alone show that the
-              list was sealed in time: for that somebody other than this site must have seen the seal before the draw.
-            </p>
-          </Notice>
-        </div>
+      <Part title="What no check can show">
+        <ul className="dashes measure">
+          {BEYOND_ANY_CHECK.map((sentence) => (
+            <li key={sentence}>{sentence}</li>
+          ))}
+          <li>
+            That the list was sealed in time, by the arithmetic alone: for that somebody other than this site must have
+            seen the seal before the draw.
+          </li>
+        </ul>
       </Part>
     </>
   )
@@ -122,6 +131,27 @@ function NothingYet({ draw }: { readonly draw: DrawPage }) {
         {draw.seal
           ? 'The list is sealed but nothing is drawn, so there are no coins to check. The seal’s own files are here already: keep a copy, and compare it after the draw.'
           : 'This draw is not sealed, so there is nothing to check yet.'}
+      </p>
+    </Part>
+  )
+}
+
+/** The same check as one file, for whoever would rather not run code that this site sends at the time. */
+function WithoutUs() {
+  return (
+    <Part title="Without this site" note={<p>One file, with everything in it</p>}>
+      <p className="measure">
+        The check also comes as a single page. Save it once, keep it, and open it from your own disk with the network
+        off: it takes an archive, and receipts with it, and does every step. It can send nothing anywhere, because it
+        forbids itself all connections.
+      </p>
+      <p className="buttons mt-unit">
+        <ButtonLink plain download quiet to="/check.html">
+          Save the page
+        </ButtonLink>
+        <Link plain to="/check.html">
+          Open it here
+        </Link>
       </p>
     </Part>
   )

@@ -1,6 +1,7 @@
 import { useSuspenseQuery } from '@tanstack/react-query'
 import { useParams, type LoaderFunctionArgs } from 'react-router'
 import type { DrawPage } from '#shared/schemas/api/public.ts'
+import { awardWords } from '#src/lib/award-words.ts'
 import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
@@ -11,7 +12,7 @@ import { StateTicket } from '#src/ui/state-ticket.tsx'
 import { drawQuery } from './api/get-draw.ts'
 import { ChanceNote } from './components/winners-part.tsx'
 import { CountdownPart } from './components/countdown-part.tsx'
-import { awardWords, drawLead, pickName } from './words.ts'
+import { drawLead, pickName } from './words.ts'
 
 export async function loader(args: LoaderFunctionArgs) {
   await load(args, (api) => drawQuery(api, args.params.slug ?? ''))

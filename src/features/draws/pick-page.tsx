@@ -4,6 +4,7 @@ import type { PickPage } from '#shared/schemas/api/public.ts'
 import { ChanceProduct } from '#src/features/ladder/chance.tsx'
 import { Ladder, Winner } from '#src/features/ladder/ladder.tsx'
 import { ReadingKey } from '#src/features/ladder/reading-key.tsx'
+import { awardInSentence, awardWords } from '#src/lib/award-words.ts'
 import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
@@ -15,7 +16,7 @@ import { formatDate } from '#src/ui/format-time.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Part, Title } from '#src/ui/page.tsx'
 import { pickQuery } from './api/get-pick.ts'
-import { awardInSentence, awardWords, pickName } from './words.ts'
+import { pickName } from './words.ts'
 
 export async function loader(args: LoaderFunctionArgs) {
   await load(args, (api) => pickQuery(api, args.params.slug ?? '', args.params.pick ?? ''))

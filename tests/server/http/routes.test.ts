@@ -134,6 +134,7 @@ const TABLE: Record<string, readonly [keyof typeof WHO, number]> = {
   'GET /draws/:slug/transcript.jsonl': ['everybody', 404],
   'GET /draws/:slug/labels.jsonl': ['everybody', 404],
   'GET /draws/:slug/proof.zip': ['everybody', 404],
+  'GET /check.html': ['everybody', 404],
   'GET /healthz': ['everybody', 200],
   'GET /robots.txt': ['everybody', 200],
   'GET /sitemap.xml': ['everybody', 200],

@@ -58,6 +58,7 @@ describe('buildOutdated', () => {
     put('src/entry/client.tsx', 'one', 1000)
     put('build/client/index.js', '', 1000)
     put('build/ssr/server.js', '', 1000)
+    put('build/check-page/check.html', '', 1000)
   })
   const build = () => stampBuild(root, buildDigest(root))
 

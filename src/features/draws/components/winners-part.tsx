@@ -1,12 +1,13 @@
 import type { DrawPage, PickSummary } from '#shared/schemas/api/public.ts'
 import { MiniLadder, miniHeight, miniSize } from '#src/features/ladder/mini-ladder.tsx'
 import { walkSize } from '#src/features/ladder/words.ts'
+import { awardWords } from '#src/lib/award-words.ts'
 import { fraction, oneIn } from '#src/ui/chance-words.ts'
 import { DataTable } from '#src/ui/data-table.tsx'
 import { capitalise, countOf, formatNumber, ordinal } from '#src/ui/format-number.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Part } from '#src/ui/page.tsx'
-import { awardWords, pickName } from '../words.ts'
+import { pickName } from '../words.ts'
 
 /** So many winners are shown large, each with a small ladder; the others in a table. */
 const LARGE = 20
