@@ -64,8 +64,8 @@ export function startService({ name, args, cwd, env, logFile, onTrouble, ownGrou
   const ended = new Promise((resolve) => {
     const finish = (/** @type {string} */ how) => {
       running = false
-      log.end()
-      resolve(how)
+      // Whoever waits for the end may read the log then.
+      log.end(() => resolve(how))
     }
     child.once('error', (error) => finish(`before it began: ${error.message}`))
     child.once('close', (code, signal) => finish(signal ? `by ${signal}` : `with exit code ${code}`))
