@@ -12,6 +12,7 @@ import { createRegistry } from '#server/http/endpoints/registry.ts'
 import { mountCheckPage } from '#server/http/files/check-page.ts'
 import { mountDrawFiles } from '#server/http/files/draw-files.ts'
 import { LockedArchives } from '#server/http/files/locked-archives.ts'
+import { mountLogFiles } from '#server/http/files/log-files.ts'
 import { mountSiteFiles } from '#server/http/files/site-files.ts'
 import { mountStaticFiles } from '#server/http/files/static-files.ts'
 import { createHandlers } from '#server/http/handlers/all.ts'
@@ -102,6 +103,7 @@ export function createSite(parts: SiteParts): SiteApp {
   mountStaticFiles(app, parts.build)
   mountCheckPage(app, parts.build)
   mountSiteFiles(app, { db: services.db, origin: config.origin, version: parts.version })
+  mountLogFiles(app, services)
   mountDrawFiles(app, { db: services.db, keys: services.signing, archives })
 
   // From here on it matters who asks.

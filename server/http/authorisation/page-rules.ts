@@ -58,6 +58,7 @@ export const fileRules: Readonly<Record<string, Rule>> = Object.fromEntries(
     '/healthz',
     '/robots.txt',
     '/sitemap.xml',
+    '/log/checkpoint.txt',
     '/assets/*path',
   ].map((path) => [path, visit]),
 )

@@ -22,6 +22,12 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   listOrganisations: visit,
   getOrganisation: visit,
   getLog: visit,
+  getLogCheckpointV1: visit,
+  listLogEntriesV1: visit,
+  getLogInclusionV1: visit,
+  getLogConsistencyV1: visit,
+  getLogState: visit,
+  getDrawLog: visit,
 
   listOfficeDraws: on('organisation', 'list-draws'),
   createDraw: on('organisation', 'edit'),

@@ -1,6 +1,7 @@
 import type { Handled } from '#server/http/endpoints/registry.ts'
 import { administratorHandlers } from '#server/http/handlers/administrator.ts'
 import { entrantHandlers } from '#server/http/handlers/entrants.ts'
+import { logHandlers } from '#server/http/handlers/log.ts'
 import { officeDrawHandlers } from '#server/http/handlers/office-draws.ts'
 import type { HandlerParts } from '#server/http/handlers/parts.ts'
 import { peopleHandlers } from '#server/http/handlers/people.ts'
@@ -12,6 +13,7 @@ export function createHandlers(parts: HandlerParts): Handled[] {
   return [
     ...sessionHandlers(parts),
     ...publicHandlers(parts),
+    ...logHandlers(parts),
     ...officeDrawHandlers(parts),
     ...entrantHandlers(parts),
     ...peopleHandlers(parts),

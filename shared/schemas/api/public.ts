@@ -300,7 +300,8 @@ export const getLog = {
   path: '/api/log',
   summary: 'Everything that happened to every draw, newest first',
   params: empty,
-  query: z.object({ page }),
+  /** `at` asks for the page on which an entry stands, in place of `page`. */
+  query: z.object({ page, at: z.coerce.number().int().min(0).max(Number.MAX_SAFE_INTEGER).optional() }),
   body: empty,
   response: logPage,
 } as const satisfies Endpoint
