@@ -58,7 +58,7 @@ export async function draftRow(
   return { organisationId, drawId }
 }
 
-/** An entry of the log; its leaf is any bytes. */
+/** An entry of the log; its leaf is any text. */
 export async function insertLogEvent(
   client: PoolClient | Pool,
   drawId: string,
@@ -69,7 +69,7 @@ export async function insertLogEvent(
   await client.query(
     `insert into log_event (index, at, event, draw_id, organisation, digest, supersedes, leaf)
      values (log_next_index(), now(), $2, $1, 'rowan-street-band', $3, $4, $5)`,
-    [drawId, event, digest, supersedes, randomBytes(40)],
+    [drawId, event, digest, supersedes, Buffer.from(hex())],
   )
 }
 
