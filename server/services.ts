@@ -3,6 +3,7 @@ import type { Sha256 } from '#shared/bytes/hashing.ts'
 import type { Network } from '#shared/protocol/networks.ts'
 import { type BeaconReader, createBeaconReader } from '#server/adapters/beacon/beacon-reader.ts'
 import { type Clock, systemClock } from '#server/adapters/clock/clock.ts'
+import { createKeyedHash, type KeyedHash } from '#server/adapters/encryption/keyed-hash.ts'
 import { createSecretBox, type SecretBox } from '#server/adapters/encryption/secret-box.ts'
 import { type Entropy, systemEntropy } from '#server/adapters/entropy/entropy.ts'
 import { sha256 } from '#server/adapters/hash/sha256.ts'
@@ -10,12 +11,12 @@ import { createMailer, type Mailer } from '#server/adapters/mail/mailer.ts'
 import { createObjectStore, type ObjectStore } from '#server/adapters/object-store/object-store.ts'
 import { createQueue, type Queue } from '#server/adapters/queue/queue.ts'
 import { createSigningKeys, type SigningKeys } from '#server/adapters/signing/signing-keys.ts'
-import type { Config } from '#server/config/config.ts'
 import {
   createDevelopmentTimestamper,
   createTimestamper,
   type Timestamper,
 } from '#server/adapters/timestamp/timestamper.ts'
+import type { Config } from '#server/config/config.ts'
 import { openStore, type RootDatabase } from '#server/store/database.ts'
 
 /** What commands, queries and jobs know about the site itself. */
@@ -39,8 +40,10 @@ export interface Services {
   readonly store: ObjectStore
   readonly mailer: Mailer
   readonly beacon: BeaconReader
-  readonly secrets: SecretBox
   readonly timestamps: Timestamper
+  readonly secrets: SecretBox
+  /** Hashes of the codes on printed slips. */
+  readonly slipCodes: KeyedHash
   readonly signing: SigningKeys
   readonly sha256: Sha256
   readonly site: Site
@@ -56,17 +59,17 @@ export interface ServiceOptions {
   readonly jobExpirySeconds?: number
   /** Another clock than the system's is allowed for demo organisations only: the database sees to it. */
   readonly clock?: Clock
+  /** Without it the configured authorities; with a clock of one's own the development authority, at its time. */
+  readonly timestamps?: Timestamper
 }
 
 /** The services that a configuration names. Close them at the end of the process. */
-  /** Without it the configured authorities; with a clock of one's own the development authority, at its time. */
-  readonly timestamps?: Timestamper
 export function createServices(config: Config, options: ServiceOptions): OpenServices {
   const clock = options.clock ?? systemClock
+  const pretended = options.clock !== undefined && config.timestamps.development
   const { pool, db, close } = openStore(config.databaseUrl, {
     name: options.name,
     ...(options.connections ? { connections: options.connections } : {}),
-  const pretended = options.clock !== undefined && config.timestamps.development
   })
   const store = createObjectStore({ ...config.objectStore, clock: systemClock })
   const mailer = createMailer(config.mail)
@@ -79,12 +82,13 @@ export function createServices(config: Config, options: ServiceOptions): OpenSer
     store,
     mailer,
     beacon: createBeaconReader({ relays: config.beacon.relays }),
-    secrets: createSecretBox(config.encryptionKeys),
-    signing: createSigningKeys(config.signingKeyPem, config.retiredSigningKeyPems),
-    sha256,
     timestamps:
       options.timestamps ??
       (pretended ? createDevelopmentTimestamper(clock) : createTimestamper({ ...config.timestamps, clock })),
+    secrets: createSecretBox(config.encryptionKeys),
+    slipCodes: createKeyedHash(config.encryptionKeys, 'slip code'),
+    signing: createSigningKeys(config.signingKeyPem, config.retiredSigningKeyPems),
+    sha256,
     site: {
       origin: config.origin,
       network: config.beacon.network,

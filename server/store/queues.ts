@@ -15,7 +15,7 @@ export const QUEUES = {
   checkpoint: { retryLimit: 2000, retryDelay: 3, retryBackoff: false },
   /** Puts one draw's proof into the object store. */
   archive: { retryLimit: 2000, retryDelay: 3, retryBackoff: false },
-  /** Writes the rows of a draw's mails: its seal, its result, a notice. */
+  /** Writes the rows of a draw's mails: private links, its seal, its result, a notice. */
   'prepare-mail': { retryLimit: 1000, retryDelay: 3, retryBackoff: false },
   /** Sends the mails that are due. */
   'send-mail': { retryLimit: 1000, retryDelay: 3, retryBackoff: false },
@@ -35,14 +35,16 @@ export interface JobData {
     /** Where it replaces the seal in force: the new draw time, and the public reason. */
     readonly postpone?: { readonly drawAt: string; readonly reason: string }
   }
+  readonly timestamp: { readonly draw: string }
   readonly settle: { readonly draw: string }
   readonly archive: { readonly draw: string }
   readonly checkpoint: { readonly draw?: string }
-  readonly timestamp: { readonly draw: string }
   readonly 'prepare-mail': {
     readonly draw: string
-    readonly about: 'seal' | 'result' | 'notice'
+    readonly about: 'entry' | 'seal' | 'result' | 'notice'
     readonly logIndex?: number
+    /** For `entry`: only those whom this import brought in. */
+    readonly import?: string
   }
   readonly 'send-mail': { readonly draw?: string }
 }

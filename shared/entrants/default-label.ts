@@ -4,10 +4,14 @@
  * says little on purpose: whoever wants the whole name announced writes it in the label column.
  */
 export function defaultLabel(name: string): string {
-  const comma = /^([^,]+),\s*(\S.*)$/.exec(name)
-  const words = (comma ? `${comma[2]} ${comma[1]}` : name).split(/\s+/).filter((word) => word !== '')
-  const first = words[0] ?? ''
-  const last = words.length > 1 ? (words[words.length - 1] ?? '') : ''
+  const [first = '', last = ''] = firstAndLast(name)
   const initial = /^[^\p{L}\p{N}]*([\p{L}\p{N}]\p{M}*)/u.exec(last)?.[1]
   return initial === undefined ? first : `${first} ${initial}.`
+}
+
+/** The first and the last word of a name, or its only one; `Quillon, Marta` is read the other way round. */
+export function firstAndLast(name: string): readonly string[] {
+  const comma = /^([^,]+),\s*(\S.*)$/.exec(name)
+  const words = (comma ? `${comma[2]} ${comma[1]}` : name).split(/\s+/).filter((word) => word !== '')
+  return words.length > 1 ? [words[0] ?? '', words[words.length - 1] ?? ''] : words
 }

@@ -3,6 +3,7 @@ import type { CommandActor } from '#server/commands/actor.ts'
 import { audit } from '#server/commands/audit.ts'
 import { refused } from '#server/commands/command-error.ts'
 import { lockDraw, requireState } from '#server/commands/draws/lock-draw.ts'
+import { queueEntryMail } from '#server/commands/entries/entry-mail.ts'
 import { inTransaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
 import { entrant, entrantPerson } from '#server/store/schema/entrant.ts'
@@ -42,6 +43,7 @@ export async function addEntrant(
       sentence: `Added ${person.name} (${added.code}) with ${input.entrant.tickets} tickets.`,
       after: { ...person, tickets: input.entrant.tickets },
     })
+    if (person.email !== null) await queueEntryMail(tx, services, { drawId: row.id, entrantId: added.id })
     return { id: added.id }
   })
 }

@@ -40,6 +40,7 @@ export async function applyImport(
       sentence: `Imported ${found.entrants} entrants with ${found.tickets} tickets from ${found.fileName}.`,
       after: { entrants: found.entrants, tickets: found.tickets },
     })
+    await services.queue.enqueue(tx.client, 'prepare-mail', { draw: its.id, about: 'entry', import: found.id })
   })
 }
 

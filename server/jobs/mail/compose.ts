@@ -21,10 +21,11 @@ export interface DrawWords {
   readonly demo: boolean
 }
 
-const tickets = (count: number) => (count === 1 ? '1 ticket' : `${count} tickets`)
-const paragraphs = (...parts: readonly (string | null)[]) => `${parts.filter((part) => part !== null).join('\n\n')}\n`
-const sender = (draw: DrawWords) => `${draw.organisation}\n${draw.promoterName}, ${draw.promoterAddress}`
-const demo = (draw: DrawWords) =>
+export const tickets = (count: number) => (count === 1 ? '1 ticket' : `${count} tickets`)
+export const paragraphs = (...parts: readonly (string | null)[]) =>
+  `${parts.filter((part) => part !== null).join('\n\n')}\n`
+export const sender = (draw: DrawWords) => `${draw.organisation}\n${draw.promoterName}, ${draw.promoterAddress}`
+export const demo = (draw: DrawWords) =>
   draw.demo ? 'This is a demonstration. Nobody sold a ticket, and no prize is given.' : null
 
 export function sealWords(
@@ -39,6 +40,8 @@ export function sealWords(
     readonly sealDigest: string
     readonly replaces: string | null
     readonly reason: string | null
+    /** The private page; null once the entrant's details were erased. */
+    readonly link: string | null
   },
 ): Words {
   const renewed =
@@ -54,6 +57,8 @@ export function sealWords(
       `The draw takes place on ${localWords(draw.drawAt, draw.timeZone)}. Nothing in the list can change until then without everybody seeing it.`,
       renewed,
       `Keep the attached file, receipt.json. It is your private proof that you are in the sealed list; it holds your name, so show it only to people you trust. The seal's digest, all 64 digits, is:\n${entry.sealDigest}`,
+      entry.link &&
+        `Your private page, which proves the receipt for you and later shows what happened to your tickets:\n${entry.link}`,
       `The draw's page, on which everybody can follow and check it:\n${draw.page}`,
       `Is something wrong? Write to the promoter below, and name your code ${entry.code}.`,
       demo(draw),
@@ -64,7 +69,12 @@ export function sealWords(
 
 export function wonWords(
   draw: DrawWords,
-  entry: { readonly name: string; readonly code: string; readonly prizes: readonly PickedAward[] },
+  entry: {
+    readonly name: string
+    readonly code: string
+    readonly prizes: readonly PickedAward[]
+    readonly link: string | null
+  },
 ): Words {
   const won = entry.prizes.map(({ name, item, of }) => (of === 1 ? name : `${name} (${item} of ${of})`))
   return {
@@ -73,6 +83,7 @@ export function wonWords(
       `Dear ${entry.name},`,
       `you have won in “${draw.title}”: ${won.join('; ')}.`,
       `How to claim: the promoter, ${draw.promoterName}, will be in touch with you. You can also write to ${draw.promoterAddress} yourself; name your code ${entry.code}. Nobody who asks you for money to hand over a prize is acting for the promoter.`,
+      entry.link && `How the coins came to you, on your private page:\n${entry.link}`,
       `How it was decided, coin by coin, for everybody to check:\n${draw.page}`,
       demo(draw),
       sender(draw),
@@ -80,12 +91,16 @@ export function wonWords(
   }
 }
 
-export function resultWords(draw: DrawWords, entry: { readonly name: string; readonly tickets: number }): Words {
+export function resultWords(
+  draw: DrawWords,
+  entry: { readonly name: string; readonly tickets: number; readonly link: string | null },
+): Words {
   return {
     subject: `The result is out: ${draw.title}`,
     text: paragraphs(
       `Dear ${entry.name},`,
       `“${draw.title}” has been drawn. Your ${tickets(entry.tickets)} did not win a prize this time. Thank you for taking part.`,
+      entry.link && `What happened to your tickets at each pick, and how near the coins came:\n${entry.link}`,
       `The winners, and every coin that decided, are on the draw's page:\n${draw.page}`,
       'With the receipt that you got when the list was sealed you can check that your tickets were in.',
       demo(draw),

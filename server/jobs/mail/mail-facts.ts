@@ -11,6 +11,7 @@ import { readSealedLeaves } from '#server/store/queries/sealed-leaves.ts'
 import { sealOf, type SealRow } from '#server/store/queries/seals.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { entrant, entrantPerson } from '#server/store/schema/entrant.ts'
+import { correctionRequest } from '#server/store/schema/entry.ts'
 import { organisation } from '#server/store/schema/people.ts'
 import { logEvent, logNote } from '#server/store/schema/record.ts'
 import { resultPick } from '#server/store/schema/result.ts'
@@ -96,6 +97,30 @@ export class MailFacts {
       .leftJoin(logNote, eq(logNote.logIndex, logEvent.index))
       .where(eq(logEvent.index, logIndex))
     return { name: person.name, email: person.email, reason: event?.reason ?? null }
+  }
+
+  /** An entrant as the list has them now; null once the person was erased. */
+  async entry(entrantId: number) {
+    const [row] = await this.db
+      .select({
+        name: entrantPerson.name,
+        email: entrantPerson.email,
+        label: entrantPerson.label,
+        numbers: entrantPerson.numbers,
+        tickets: entrant.tickets,
+        code: entrant.code,
+      })
+      .from(entrantPerson)
+      .innerJoin(entrant, eq(entrant.id, entrantPerson.entrantId))
+      .where(eq(entrantPerson.entrantId, entrantId))
+    return row ?? null
+  }
+
+  /** A request for a correction and its answer; null while it waits, and once the person was erased. */
+  async correction(id: number) {
+    const [row] = await this.db.select().from(correctionRequest).where(eq(correctionRequest.id, id))
+    if (!row || row.state === 'open' || row.answer === null) return null
+    return { words: row.words, verdict: row.state, answer: row.answer }
   }
 
   /** The receipt of a leaf (PROTOCOL section 10), as bytes. */

@@ -28,6 +28,16 @@ export async function prepareMail(
           where e.index = ${index} and e.event in ('postponed', 'cancelled', 'failed')
             and p.draw_id = ${input.draw}::uuid and p.email is not null) k
         on conflict (key) do nothing`)
+    } else if (input.about === 'entry') {
+      const brought = input.import === undefined ? sql`` : sql`and e.import_id = ${input.import}::uuid`
+      await tx.db.execute(sql`
+        insert into mail (key, kind, draw_id, entrant_id, message_id, created_at, next_attempt_at)
+        select k.key, 'entry', ${input.draw}::uuid, k.entrant_id, ${messageId}, ${now}, ${now}
+        from (select 'entry:' || p.entrant_id as key, p.entrant_id
+          from entrant_person p join entrant e on e.id = p.entrant_id
+          where p.draw_id = ${input.draw}::uuid and p.email is not null ${brought}
+          order by p.entrant_id) k
+        on conflict (key) do nothing`)
     } else {
       const seal = sealInForce(await sealsOf(tx.db, input.draw))
       if (!seal) return

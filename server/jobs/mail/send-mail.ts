@@ -8,7 +8,9 @@ import type { AfterWrite } from '#server/jobs/crash-points.ts'
 import type { Services } from '#server/services.ts'
 import { mail, mailContent } from '#server/store/schema/operation.ts'
 import { accountWords, noticeWords, resultWords, sealWords, wonWords } from './compose.ts'
+import { correctionWords, entryWords } from './entry-words.ts'
 import { MailFacts } from './mail-facts.ts'
+import { privateLink } from './private-link.ts'
 
 const MOST_ATTEMPTS = 12
 /** Seconds until the next attempt: 30, 60, 120, … at most an hour. */
@@ -43,7 +45,8 @@ async function sendNext(services: Services, afterWrite: AfterWrite, facts: MailF
       .where(and(eq(mail.state, 'queued'), lte(mail.nextAttemptAt, services.clock.now())))
       .orderBy(asc(mail.nextAttemptAt), asc(mail.id))
       .limit(1)
-      .for('update', { skipLocked: true })
+      // Leaves the key alone, so that a private link can be stored beside the mail meanwhile.
+      .for('no key update', { skipLocked: true })
     if (!row) return false
     afterWrite('mail-claimed')
     await handOver(tx, services, afterWrite, facts, row)
@@ -71,6 +74,7 @@ async function handOver(
   }
   if (outgoing === null) {
     await mark({ state: 'dropped', error: 'There is no address any more.' })
+    await tx.db.delete(mailContent).where(eq(mailContent.mailId, row.id))
     return
   }
   const outcome = await services.mailer.send({ messageId: row.messageId, ...outgoing })
@@ -116,14 +120,33 @@ async function compose(tx: Transaction, services: Services, facts: MailFacts, ro
       if (!notice?.email) return null
       return { to: notice.email, ...noticeWords(await facts.draw(drawId), { kind, ...notice }) }
     }
+    case 'entry':
+    case 'entry-link':
+    case 'correction':
+      return entryMail(services, facts, row)
     case 'seal':
     case 'result':
     case 'won':
-      return entrantMail(facts, row)
+      return entrantMail(services, facts, row)
   }
 }
 
-async function entrantMail(facts: MailFacts, row: MailRow): Promise<Outgoing | null> {
+async function entryMail(services: Services, facts: MailFacts, row: MailRow): Promise<Outgoing | null> {
+  const { drawId, entrantId, correctionId } = row
+  if (drawId === null || entrantId === null) throw new Error('A mail to an entrant tells of no entry.')
+  const entry = await facts.entry(entrantId)
+  if (!entry?.email) return null
+  const draw = await facts.draw(drawId)
+  const asked = correctionId === null ? null : await facts.correction(correctionId)
+  const link = await privateLink(services, row)
+  if (link === null) return null
+  if (row.kind === 'correction') {
+    return asked ? { to: entry.email, ...correctionWords(draw, { ...entry, ...asked, link }) } : null
+  }
+  return { to: entry.email, ...entryWords(draw, { ...entry, link, again: row.kind === 'entry-link' }) }
+}
+
+async function entrantMail(services: Services, facts: MailFacts, row: MailRow): Promise<Outgoing | null> {
   const { drawId, sealId, leaf, kind } = row
   if (drawId === null || sealId === null || leaf === null) throw new Error('A mail to an entrant tells of no leaf.')
   const found = await facts.leaf(sealId, leaf)
@@ -131,10 +154,12 @@ async function entrantMail(facts: MailFacts, row: MailRow): Promise<Outgoing | n
   const { person, tickets, code } = found
   const to = person.email as string
   const draw = await facts.draw(drawId)
+  const link = await privateLink(services, row)
   if (kind === 'won') {
-    return { to, ...wonWords(draw, { name: person.name, code, prizes: await facts.prizes(drawId, sealId, leaf) }) }
+    const prizes = await facts.prizes(drawId, sealId, leaf)
+    return { to, ...wonWords(draw, { name: person.name, code, prizes, link }) }
   }
-  if (kind === 'result') return { to, ...resultWords(draw, { name: person.name, tickets }) }
+  if (kind === 'result') return { to, ...resultWords(draw, { name: person.name, tickets, link }) }
   const seal = await facts.sealRow(sealId)
   return {
     to,
@@ -148,6 +173,7 @@ async function entrantMail(facts: MailFacts, row: MailRow): Promise<Outgoing | n
       sealDigest: seal.digest,
       replaces: seal.supersedes,
       reason: seal.reason,
+      link,
     }),
     attachments: [
       { name: 'receipt.json', contentType: 'application/json', content: await facts.receipt(sealId, person, tickets) },
