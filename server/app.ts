@@ -8,6 +8,7 @@ import { NOBODY } from '#server/http/authorisation/actor.ts'
 import { endpointRules } from '#server/http/authorisation/rules.ts'
 import type { RequestContext } from '#server/http/endpoints/context.ts'
 import { mountEndpoints } from '#server/http/endpoints/mount.ts'
+import { mountPublicApi } from '#server/http/endpoints/public-api.ts'
 import { createRegistry } from '#server/http/endpoints/registry.ts'
 import { mountCheckPage } from '#server/http/files/check-page.ts'
 import { mountDrawFiles } from '#server/http/files/draw-files.ts'
@@ -18,6 +19,7 @@ import { mountStaticFiles } from '#server/http/files/static-files.ts'
 import { createHandlers } from '#server/http/handlers/all.ts'
 import { refuseCrossSiteWrites } from '#server/http/middleware/cross-site.ts'
 import { errorHandler, noSuchEndpoint } from '#server/http/middleware/errors.ts'
+import { openToOtherSites } from '#server/http/middleware/open-reads.ts'
 import { requestLog } from '#server/http/middleware/request-log.ts'
 import { securityHeaders } from '#server/http/middleware/security-headers.ts'
 import { mountPages } from '#server/http/pages/mount-pages.ts'
@@ -99,12 +101,14 @@ export function createSite(parts: SiteParts): SiteApp {
   app.use(requestLog(logger))
   app.use(securityHeaders({ https }))
   app.use(refuseCrossSiteWrites({ origin: config.origin }))
+  app.use(openToOtherSites)
   app.use(compression({ threshold: 1024 }))
   mountStaticFiles(app, parts.build)
   mountCheckPage(app, parts.build)
   mountSiteFiles(app, { db: services.db, origin: config.origin, version: parts.version })
   mountLogFiles(app, services)
   mountDrawFiles(app, { db: services.db, keys: services.signing, archives })
+  mountPublicApi(app, registry, { origin: config.origin, version: parts.version })
 
   // From here on it matters who asks.
   app.use(sessions.middleware)

@@ -7,6 +7,7 @@ import { Writable } from 'node:stream'
 import type { Express } from 'express'
 import { pino } from 'pino'
 import request from 'supertest'
+import type { Clock } from '#server/adapters/clock/clock.ts'
 import { createPasswords } from '#server/adapters/passwords/passwords.ts'
 import { createSite, type SiteParts } from '#server/app.ts'
 import type { Config } from '#server/config/config.ts'
@@ -44,8 +45,13 @@ export const plainRender: Render = async (asked, context) => {
   }
 }
 
-export async function startWebSite(options: Partial<SiteParts> = {}, settings: Partial<Config> = {}): Promise<WebSite> {
-  const base = await startTestSite()
+/** `clock` moves the time of demo organisations, as in {@link startTestSite}. */
+export async function startWebSite(
+  options: Partial<SiteParts> = {},
+  settings: Partial<Config> = {},
+  clock?: Clock,
+): Promise<WebSite> {
+  const base = await startTestSite(clock ? { clock } : {})
   const { database, services } = base
   const config = { ...base.config, ...settings }
   const passwords = createPasswords({ cost: 4, threads: 1 })

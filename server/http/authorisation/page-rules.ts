@@ -57,6 +57,7 @@ export const fileRules: Readonly<Record<string, Rule>> = Object.fromEntries(
     '/check.html',
     '/healthz',
     '/robots.txt',
+    '/api/v1/openapi.json',
     '/sitemap.xml',
     '/log/checkpoint.txt',
     '/assets/*path',

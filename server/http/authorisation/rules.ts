@@ -19,6 +19,7 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   searchDraws: visit,
   getDraw: visit,
   getPick: visit,
+  getDrawOdds: visit,
   listOrganisations: visit,
   getOrganisation: visit,
   getLog: visit,
@@ -28,6 +29,14 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   getLogConsistencyV1: visit,
   getLogState: visit,
   getDrawLog: visit,
+
+  listDrawsV1: visit,
+  getDrawV1: visit,
+  getSealInForceV1: visit,
+  getSealV1: visit,
+  getInclusionV1: visit,
+  getResultV1: visit,
+  listTranscriptV1: visit,
 
   listOfficeDraws: on('organisation', 'list-draws'),
   createDraw: on('organisation', 'edit'),
@@ -39,6 +48,7 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   reopenDraw: on('draw', 'run'),
   // Preparing the seal is an organiser's work; sealing is the promoter's.
   getSealSummary: on('draw', 'read-entrants'),
+  getOfficeOdds: on('draw', 'read-entrants'),
   sealDraw: on('draw', 'run'),
   postponeDraw: on('draw', 'run'),
   cancelDraw: on('draw', 'run'),

@@ -5,17 +5,18 @@ import { receiveUpload, uploadAnswer } from '#server/http/endpoints/upload.ts'
 import { problem } from '#server/http/problems.ts'
 import { uploadImport } from '#shared/schemas/api/office.ts'
 import type { Endpoint } from '#shared/schemas/endpoint.ts'
+import { isPublicEndpoint } from '#shared/schemas/public-endpoint.ts'
 
 /** A thousand prizes with their descriptions are longer than other bodies. */
 const LONG_BODIES: ReadonlySet<string> = new Set(['putPrizes'])
 
 export type ContextOf = (request: Request) => RequestContext
 
-/** Puts every endpoint onto the application. `afterWrite` runs once a call that may have changed something is done. */
+/** Puts the site's own endpoints onto the application. `afterWrite` runs once a call that may have changed something is done. */
 export function mountEndpoints(app: Express, registry: Registry, contextOf: ContextOf, afterWrite: () => void): void {
   const short = jsonBody('100kb')
   const long = jsonBody('2mb')
-  for (const endpoint of registry.endpoints) {
+  for (const endpoint of registry.endpoints.filter((one) => !isPublicEndpoint(one))) {
     const method = endpoint.method.toLowerCase() as 'get' | 'post' | 'put' | 'patch' | 'delete'
     const before: RequestHandler[] =
       endpoint.name === uploadImport.name

@@ -5,6 +5,7 @@ import { logHandlers } from '#server/http/handlers/log.ts'
 import { officeDrawHandlers } from '#server/http/handlers/office-draws.ts'
 import type { HandlerParts } from '#server/http/handlers/parts.ts'
 import { peopleHandlers } from '#server/http/handlers/people.ts'
+import { publicApiHandlers } from '#server/http/handlers/public-api.ts'
 import { publicHandlers } from '#server/http/handlers/public.ts'
 import { sessionHandlers } from '#server/http/handlers/session.ts'
 
@@ -14,6 +15,7 @@ export function createHandlers(parts: HandlerParts): Handled[] {
     ...sessionHandlers(parts),
     ...publicHandlers(parts),
     ...logHandlers(parts),
+    ...publicApiHandlers(parts),
     ...officeDrawHandlers(parts),
     ...entrantHandlers(parts),
     ...peopleHandlers(parts),
