@@ -1,9 +1,6 @@
-import { type ChildProcess, spawn } from 'node:child_process'
-import { createInterface } from 'node:readline'
-import { fileURLToPath } from 'node:url'
 import { and, eq, inArray } from 'drizzle-orm'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
-import { CRASH_POINTS, type CrashPoint } from '#server/jobs/crash-points.ts'
+import { CRASH_POINTS } from '#server/jobs/crash-points.ts'
 import { settableClock } from '#server/adapters/clock/clock.ts'
 import { createServices, type Services } from '#server/services.ts'
 import { draw } from '#server/store/schema/draw.ts'
@@ -13,8 +10,8 @@ import { logEvent } from '#server/store/schema/record.ts'
 import { makeOffice, makeSealed, type Office } from '#tests/support/draws.ts'
 import { checkPublicArchive } from '#tests/support/public-archive.ts'
 import { startTestSite, type TestSite } from '#tests/support/site.ts'
+import { startWorker, stopWorker, until, type Worker } from '#tests/support/worker-process.ts'
 
-const ROOT = fileURLToPath(new URL('../../..', import.meta.url))
 /** Entrants with an address in each draw: Ada and Cleo. Each gets a seal mail at once and a result mail after the draw. */
 const ADDRESSES = 2
 
@@ -34,52 +31,11 @@ afterAll(async () => {
   await site.close()
 })
 
-interface Worker {
-  readonly process: ChildProcess
-  readonly ready: Promise<void>
-  /** Resolves with the signal that ended it. */
-  readonly ended: Promise<NodeJS.Signals | null>
-}
-
-function startWorker(crashAt: CrashPoint | null): Worker {
-  const child = spawn(process.execPath, ['--import', 'tsx', 'server/worker.ts'], {
-    cwd: ROOT,
-    env: {
-      PATH: process.env.PATH,
-      ...site.environment,
-      EVENPENNY_JOB_EXPIRY_SECONDS: '3',
-      EVENPENNY_LOG_LEVEL: 'silent',
-      ...(crashAt ? { EVENPENNY_CRASH_AT: crashAt } : {}),
-    },
-    stdio: ['ignore', 'pipe', 'inherit'],
-  })
-  const ended = new Promise<NodeJS.Signals | null>((resolve) => child.once('exit', (_code, signal) => resolve(signal)))
-  const ready = new Promise<void>((resolve, reject) => {
-    createInterface({ input: child.stdout }).on('line', (line) => line === 'worker ready' && resolve())
-    ended.then(() => reject(new Error('The worker ended before it was ready.')))
-  })
-  ready.catch(() => undefined)
-  return { process: child, ready, ended }
-}
-
-async function stopWorker(worker: Worker): Promise<void> {
-  worker.process.kill('SIGTERM')
-  await worker.ended
-}
-
 /** A draw whose round came an hour ago; nothing is settled yet. */
 async function overdueDraw(title: string): Promise<string> {
   const drawAt = new Date(Math.floor(Date.now() / 60_000) * 60_000 - 3600_000)
   clock.set(new Date(drawAt.getTime() - 3600_000))
   return makeSealed(past, office, { title, drawAtDate: drawAt })
-}
-
-async function until(what: string, holds: () => Promise<boolean>): Promise<void> {
-  const end = Date.now() + 60_000
-  while (!(await holds())) {
-    if (Date.now() > end) throw new Error(`This did not come about within a minute: ${what}.`)
-    await new Promise((resolve) => setTimeout(resolve, 200))
-  }
 }
 
 async function expectOnce(drawId: string): Promise<void> {
@@ -121,7 +77,7 @@ async function finished(drawId: string): Promise<boolean> {
 
 let survivor: Worker
 beforeAll(async () => {
-  survivor = startWorker(null)
+  survivor = startWorker(site, null)
   await survivor.ready
 }, 60_000)
 afterAll(() => stopWorker(survivor))
@@ -133,7 +89,7 @@ describe('two workers race, and one is killed (kill -9)', () => {
   it.each(CRASH_POINTS)(
     'after: %s',
     async (point) => {
-      const doomed = startWorker(point)
+      const doomed = startWorker(site, point)
       await doomed.ready
       let dead = false
       doomed.ended.then(() => {
