@@ -14,6 +14,7 @@ import { type Handled, handle } from '#server/http/endpoints/registry.ts'
 import { found, type HandlerParts } from '#server/http/handlers/parts.ts'
 import { getAudit } from '#server/store/queries/audit.ts'
 import { getOfficeDraw, listOfficeDraws } from '#server/store/queries/office-draws.ts'
+import { getOfficeOdds } from '#server/store/queries/odds.ts'
 import { getSealSummary } from '#server/store/queries/seal-summary.ts'
 import * as api from '#shared/schemas/api/office.ts'
 import type { OfficeDraw } from '#shared/schemas/api/office.ts'
@@ -68,6 +69,9 @@ export function officeDrawHandlers({ services }: HandlerParts): Handled[] {
       changing((context, { params, body }) => reopenDraw(services, personOf(context), { ...params, ...body })),
     ),
     handle(api.getSealSummary, async (_context, { params }) => found(await getSealSummary(services, params.draw))),
+    handle(api.getOfficeOdds, async (_context, { params, query }) =>
+      found(await getOfficeOdds(services, { ...params, ...query })),
+    ),
     handle(
       api.sealDraw,
       changing((context, { params, body: { version, entrants, tickets } }) =>

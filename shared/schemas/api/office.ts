@@ -1,5 +1,6 @@
 import { z } from 'zod'
 import type { Endpoint } from '../endpoint.ts'
+export { getOfficeOdds } from './odds.ts'
 import {
   drawState,
   email,
