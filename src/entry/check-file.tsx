@@ -20,7 +20,13 @@ function CheckFile() {
           lead="Give it a proof archive. It does every step on this device and needs no network: save this page and keep it."
           stub={<p className="stub-facts mt-0">One file. It forbids itself all connections.</p>}
         />
-        <CheckPanel createWorker={() => new InlineWorker({ name: 'check' })} archive={null} publishedKey={null} demo />
+        <CheckPanel
+          createWorker={() => new InlineWorker({ name: 'check' })}
+          archive={null}
+          publishedKey={null}
+          demo
+          watchesLog={false}
+        />
       </main>
       <footer className="row footer">
         <div className="stub">

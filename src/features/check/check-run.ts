@@ -18,6 +18,9 @@ export interface CheckRun {
 /** A worker that owes something and says nothing for so long is taken for lost. A slow phone tells progress far sooner. */
 export const LONGEST_SILENCE_MS = 60_000
 
+/** What settles something that was asked; the rest is told in between. */
+const ANSWERS: ReadonlySet<FromWorker['kind']> = new Set(['held', 'failed', 'stopped', 'receipt', 'picks', 'walk'])
+
 const LOST =
   'The check did not move for a minute and was ended. Another page may keep this device busy: try again, or check the archive by the command.'
 
@@ -49,7 +52,7 @@ export function beginCheck(
   }
   worker.onmessage = ({ data }) => {
     if (over) return
-    if (data.kind !== 'event' && data.kind !== 'fetched') owed--
+    if (ANSWERS.has(data.kind)) owed--
     if (data.kind === 'held') held = true
     // A question that could not be answered leaves the archive open for others.
     if (data.kind === 'failed' || (data.kind === 'stopped' && !held)) end()

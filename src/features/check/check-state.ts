@@ -3,6 +3,7 @@ import type { StepFacts } from '#shared/protocol/check/step-facts.ts'
 import type { CheckVerdict } from '#shared/protocol/check/verdict.ts'
 import type { CoinLine } from '#shared/schemas/api/public.ts'
 import type { CheckedDraw, FromWorker, PickRow, ReceiptFinding } from './messages.ts'
+import type { LogWatch } from './worker/watch-log.ts'
 
 export interface Progress {
   readonly done: number
@@ -40,6 +41,8 @@ export interface CheckView {
   readonly steps: readonly StepView[]
   readonly failure: CheckFailure | null
   readonly held: { readonly verdict: CheckVerdict; readonly draw: CheckedDraw } | null
+  /** What became of the site's log; null until it was asked. */
+  readonly log: LogWatch | null
   /** What went wrong without being the archive's fault. */
   readonly trouble: string | null
   readonly milliseconds: number | null
@@ -71,6 +74,7 @@ export const READY: CheckView = {
   })),
   failure: null,
   held: null,
+  log: null,
   trouble: null,
   milliseconds: null,
   receipts: [],
@@ -111,6 +115,8 @@ export function checkReducer(view: CheckView, action: CheckAction): CheckView {
       // After a verdict it is only a question that could not be answered.
       if (view.phase === 'held') return { ...view, trouble: action.reason, walk: view.walk?.coins ? view.walk : null }
       return { ...ended(view, 'stopped'), trouble: action.reason }
+    case 'log':
+      return { ...view, log: action.watch }
     case 'receipt': {
       const found = (receipt: ReceiptView) =>
         receipt.id === action.id ? { ...receipt, finding: action.finding } : receipt

@@ -4,6 +4,7 @@ import type { GivenReceipt } from '#shared/protocol/check/state.ts'
 import type { CheckVerdict } from '#shared/protocol/check/verdict.ts'
 import type { Award, CoinLine } from '#shared/schemas/api/public.ts'
 import type { HashEngine } from './worker/fast-tools.ts'
+import type { LogWatch } from './worker/watch-log.ts'
 
 /** What to check: bytes that the page has, or an address of this site. */
 export type GivenArchive =
@@ -14,6 +15,8 @@ export interface StartOptions {
   readonly allowDevelopmentChain: boolean
   /** 64 lower-case hex digits, or null where there is nothing to compare with. */
   readonly expectedKey: string | null
+  /** Whether the site's log is to be asked, and the note of it that this browser remembers. */
+  readonly log: { readonly remembered: string | null } | null
 }
 
 /** From the page to the worker. `start` comes once, first; the rest is answered after a check that holds. */
@@ -58,6 +61,8 @@ export type FromWorker =
   | { readonly kind: 'failed'; readonly failure: CheckFailure; readonly milliseconds: number }
   /** Something went wrong that says nothing about the archive. */
   | { readonly kind: 'stopped'; readonly reason: string }
+  /** What became of the log, after a check that held. */
+  | { readonly kind: 'log'; readonly watch: LogWatch }
   | { readonly kind: 'receipt'; readonly id: number; readonly finding: ReceiptFinding }
   | { readonly kind: 'picks'; readonly from: number; readonly rows: readonly PickRow[] }
   | { readonly kind: 'walk'; readonly pick: number; readonly coins: readonly CoinLine[] }

@@ -1,6 +1,7 @@
 import { useEffect, useReducer, useRef } from 'react'
 import { beginCheck, type CheckRun, type WorkerLike } from './check-run.ts'
 import { checkReducer, type CheckView, READY } from './check-state.ts'
+import { rememberHead } from './log-memory.ts'
 import type { GivenArchive, StartOptions, ToWorker } from './messages.ts'
 
 export interface CheckControl {
@@ -32,6 +33,7 @@ export function useCheck(createWorker: () => WorkerLike): CheckControl {
       dispatch({ kind: 'begun', download: archive.kind === 'address' })
       const begun = beginCheck(createWorker, { kind: 'start', archive, options }, (message) => {
         dispatch(message)
+        if (message.kind === 'log' && message.watch.remember !== null) rememberHead(message.watch.remember)
         if (message.kind !== 'held') return
         held.current = true
         begun.ask({ kind: 'picks', from: 0 })

@@ -57,6 +57,7 @@ export function Check({ draw }: { readonly draw: DrawPage }) {
             archive={result.archive ? { url: `/draws/${draw.slug}/proof.zip`, bytes: result.archive.bytes } : null}
             publishedKey={seal.keyFingerprint}
             demo={draw.demo}
+            watchesLog
           />
           <ByCommand draw={draw} seal={seal} />
         </>

@@ -8,10 +8,12 @@ import { Part } from '#src/ui/page.tsx'
 import type { WorkerLike } from '../check-run.ts'
 import { shareDone } from '../check-state.ts'
 import { readFingerprint } from '../fingerprint.ts'
+import { rememberedHead } from '../log-memory.ts'
 import { type RefusedFile, sortFiles } from '../sort-files.ts'
 import { useCheck } from '../use-check.ts'
 import { phaseWords, printable } from '../words.ts'
 import { FileDrop } from './file-drop.tsx'
+import { LogPart } from './log-part.tsx'
 import { PicksPart } from './picks-part.tsx'
 import { ReceiptPart } from './receipt-part.tsx'
 import { RunningPart } from './running-part.tsx'
@@ -26,10 +28,12 @@ export interface CheckPanelProps {
   readonly publishedKey: string | null
   /** Whether the development chain may be let pass at all. */
   readonly demo: boolean
+  /** Whether the site's log is to be asked as well: only on the site itself. */
+  readonly watchesLog: boolean
 }
 
 /** The check in this browser: what to check, how it goes, what it says. */
-export function CheckPanel({ createWorker, archive, publishedKey, demo }: CheckPanelProps) {
+export function CheckPanel({ createWorker, archive, publishedKey, demo, watchesLog }: CheckPanelProps) {
   const control = useCheck(createWorker)
   const { view } = control
   const [fingerprint, setFingerprint] = useState(publishedKey ?? '')
@@ -61,7 +65,8 @@ export function CheckPanel({ createWorker, archive, publishedKey, demo }: CheckP
     setFault('error' in read ? read.error : undefined)
     setMissing(given === null)
     if ('error' in read || given === null) return
-    control.start(given, { allowDevelopmentChain, expectedKey: read.key })
+    const log = watchesLog ? { remembered: rememberedHead() } : null
+    control.start(given, { allowDevelopmentChain, expectedKey: read.key, log })
   }
 
   return (
@@ -141,6 +146,7 @@ export function CheckPanel({ createWorker, archive, publishedKey, demo }: CheckP
       </Part>
       {running ? <RunningPart fetched={view.fetched} share={shareDone(view.steps)} steps={view.steps} /> : null}
       <VerdictPart view={view} />
+      {view.log ? <LogPart log={view.log} /> : null}
       <ReceiptPart receipts={view.receipts} />
       <Part title={view.phase === 'ready' ? 'What it does' : 'Step by step'} note={<p>Up to the first that fails</p>}>
         <StepList steps={view.steps} failure={view.failure} plain={view.phase === 'ready'} />

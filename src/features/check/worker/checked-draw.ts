@@ -1,6 +1,8 @@
 import type { MembersSource } from '#shared/archive/members-source.ts'
 import { readMember } from '#shared/archive/members-source.ts'
+import { decodeUtf8 } from '#shared/bytes/bytes.ts'
 import { unwrap } from '#shared/bytes/result.ts'
+import { openCheckpoint } from '#shared/log/checkpoint.ts'
 import type { CheckReport } from '#shared/protocol/check/check-archive.ts'
 import { asStepFailure, type GivenReceipt, MEMBER_LIMITS } from '#shared/protocol/check/state.ts'
 import { memberLines } from '#shared/protocol/check/member-lines.ts'
@@ -9,10 +11,12 @@ import type { CheckTools } from '#shared/protocol/check/tools.ts'
 import { parseLabels } from '#shared/protocol/labels.ts'
 import type { ResultPick } from '#shared/protocol/result.ts'
 import type { Seal } from '#shared/protocol/seal-types.ts'
+import { decodePem } from '#shared/protocol/signature.ts'
 import { parseTranscriptLine } from '#shared/protocol/transcript.ts'
 import type { Award, CoinLine } from '#shared/schemas/api/public.ts'
 import type { CheckedDraw, PickRow, ReceiptFinding } from '../messages.ts'
 import type { HashEngine } from './fast-tools.ts'
+import { type LogWatch, watchLog } from './watch-log.ts'
 
 export type HeldReport = Extract<CheckReport, { readonly ok: true }>
 
@@ -64,6 +68,21 @@ export class CheckedArchive {
       if (at++ === pick) return unwrap(parseTranscriptLine(line.subarray(0, -1))).coins.map(([...coin]) => coin)
     }
     throw new RangeError(`The draw has no pick ${pick}.`)
+  }
+
+  /** Compares the site's log with the archive's head of it and with the one remembered. */
+  async watchLog(remembered: string | null): Promise<LogWatch> {
+    const source = await this.open()
+    const read = async (name: 'site-key.pem' | 'checkpoint.txt') =>
+      source.names.includes(name) ? await readMember(source, name, MEMBER_LIMITS[name]) : null
+    const publicKey = decodePem((await read('site-key.pem')) ?? new Uint8Array(0))
+    if (publicKey === null) throw new RangeError('The archive has no key.')
+    const { sha256 } = this.tools
+    const note = await read('checkpoint.txt')
+    const opened = note === null ? null : openCheckpoint(sha256, note, { publicKeys: [publicKey] })
+    const archived =
+      note !== null && opened?.ok ? { checkpoint: opened.value.checkpoint, note: decodeUtf8(note) ?? '' } : null
+    return watchLog({ sha256, publicKey, archived, remembered })
   }
 
   receipt(given: GivenReceipt): ReceiptFinding {

@@ -26,7 +26,7 @@ export async function runCheck(start: Start, machine: BrowserTools, post: Post):
       if (done === total || telling()) post({ kind: 'fetched', done, total })
     })
     const open = () => openZip(blobSource(blob), { inflate: inflateInBrowser })
-    const { allowDevelopmentChain, expectedKey } = start.options
+    const { allowDevelopmentChain, expectedKey, log } = start.options
     const report = await checkArchive({
       open,
       tools,
@@ -42,6 +42,13 @@ export async function runCheck(start: Start, machine: BrowserTools, post: Post):
     }
     const checked = new CheckedArchive(report, open, tools)
     post({ kind: 'held', verdict: report.verdict, draw: checked.summary(engine), milliseconds })
+    // Beside the questions, which need not wait for the network.
+    if (log !== null) {
+      void checked.watchLog(log.remembered).then(
+        (watch) => post({ kind: 'log', watch }),
+        (error) => post({ kind: 'stopped', reason: reasonOf(error) }),
+      )
+    }
     return checked
   } catch (error) {
     post({ kind: 'stopped', reason: reasonOf(error) })

@@ -1,11 +1,9 @@
 import type { DrawPage } from '#shared/schemas/api/public.ts'
 import { useApp } from '#src/lib/app-context.ts'
-import { eventMeaning, eventTitle } from '#src/lib/event-words.ts'
 import { ButtonLink } from '#src/ui/button.tsx'
 import { CopyButton } from '#src/ui/copy-button.tsx'
-import { Digest } from '#src/ui/digest.tsx'
 import { formatBytes } from '#src/ui/format-number.ts'
-import { formatBrief, formatMoment, zoneName } from '#src/ui/format-time.ts'
+import { formatMoment } from '#src/ui/format-time.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Notice } from '#src/ui/notice.tsx'
 import { Part } from '#src/ui/page.tsx'
@@ -18,6 +16,13 @@ export function CheckPart({ draw }: { readonly draw: DrawPage }) {
   return (
     <Part title="Check it yourself">
       <ul className="ways">
+        <li>
+          <div>
+            <h3>Here, in this browser</h3>
+            <p className="measure">Does every step on your own device, and opens each to its figures.</p>
+          </div>
+          <ButtonLink to={`/draws/${draw.slug}/check`}>Check every coin</ButtonLink>
+        </li>
         <li>
           <div>
             <h3>Coin by coin</h3>
@@ -58,34 +63,6 @@ export function CheckPart({ draw }: { readonly draw: DrawPage }) {
           </p>
         </Notice>
       </div>
-    </Part>
-  )
-}
-
-export function HistoryPart({ draw }: { readonly draw: DrawPage }) {
-  if (draw.history.length === 0) return null
-  const year = new Date(draw.now).getUTCFullYear()
-  return (
-    <Part
-      title={draw.state === 'drawn' || draw.state === 'concluded' ? 'The whole history' : 'What has happened'}
-      note={<p>Nothing is ever taken away. Times are those of {zoneName(draw.timeZone)}.</p>}
-    >
-      <ol className="account">
-        {draw.history.map((line) => (
-          <li key={line.index}>
-            <time dateTime={line.at}>{formatBrief(line.at, draw.timeZone, year)}</time>
-            <div>
-              <h3>{eventTitle(line.event)}</h3>
-              <p>{eventMeaning(line.event)}</p>
-              {line.note ? <p className="mt-0">“{line.note}”</p> : null}
-              <div className="exact">
-                Log entry {line.index}
-                {line.digest ? <Digest value={line.digest} what={`the digest of log entry ${line.index}`} /> : null}
-              </div>
-            </div>
-          </li>
-        ))}
-      </ol>
     </Part>
   )
 }
