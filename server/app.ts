@@ -25,6 +25,7 @@ import { securityHeaders } from '#server/http/middleware/security-headers.ts'
 import { mountPages } from '#server/http/pages/mount-pages.ts'
 import { PageCache } from '#server/http/pages/page-cache.ts'
 import type { Renderer } from '#server/http/pages/renderer.ts'
+import { mountPieces } from '#server/http/pieces/mount-pieces.ts'
 import { createProblemOf } from '#server/http/problem-of.ts'
 import { createSessions, signedInPersonId } from '#server/http/session/sessions.ts'
 import { createSignInGuard, type SignInLimits } from '#server/http/session/sign-in-limits.ts'
@@ -108,6 +109,7 @@ export function createSite(parts: SiteParts): SiteApp {
   mountSiteFiles(app, { db: services.db, origin: config.origin, version: parts.version })
   mountLogFiles(app, services)
   mountDrawFiles(app, { db: services.db, keys: services.signing, archives })
+  mountPieces(app, services)
   mountPublicApi(app, registry, { origin: config.origin, version: parts.version })
 
   // From here on it matters who asks.

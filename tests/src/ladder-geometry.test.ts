@@ -1,7 +1,7 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
-import { coinShape, fan, sideLabel, weigh, type LadderCoin } from '#src/features/ladder/geometry.ts'
-import { miniHeight, miniSize } from '#src/features/ladder/mini-ladder.tsx'
+import { coinShape, fan, miniHeight, miniSize, type LadderCoin } from '#shared/sampling/ladder-shape.ts'
+import { sideLabel, weigh } from '#src/features/ladder/geometry.ts'
 import { tossCoin } from '#shared/sampling/coin.ts'
 
 const lines = (path: string) =>

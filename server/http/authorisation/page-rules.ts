@@ -54,6 +54,11 @@ export const fileRules: Readonly<Record<string, Rule>> = Object.fromEntries(
   [
     ...DRAW_FILES.map((name) => `/draws/:slug/${name}`),
     ...FIXED_FILES.map((name) => `/${name}`),
+    '/embed/draws/:slug',
+    '/draws/:slug/card.svg',
+    '/draws/:slug/qr.svg',
+    '/organisations/:slug/qr.svg',
+    '/organisations/:slug/feed.atom',
     '/check.html',
     '/healthz',
     '/robots.txt',

@@ -1,6 +1,8 @@
 import { Head } from '#src/lib/head.tsx'
 import { Link } from '#src/ui/link.tsx'
 import { Part, Title } from '#src/ui/page.tsx'
+import { ApiPart } from './api-part.tsx'
+import { PiecesPart } from './pieces-part.tsx'
 
 const LEAD = 'Where each public file lies, what it holds, and how to check a draw without trusting this site.'
 
@@ -32,10 +34,11 @@ export function Component() {
           ))}
         </ul>
         <p className="measure mt-unit">
-          So the seal of a draw lies at <code>/draws/its-name/seal.json</code>. The data behind each page is at the same
-          path under <code>/api</code>, as JSON: <code>/api/draws/its-name</code>.
+          So the seal of a draw lies at <code>/draws/its-name/seal.json</code>.
         </p>
       </Part>
+      <ApiPart />
+      <PiecesPart />
       <Part title="Check by command">
         <p className="measure">
           The archive brings its own check: one readable file for plain Node, and the library for the beacon’s signature

@@ -14,6 +14,7 @@ import { CountdownPart } from './components/countdown-part.tsx'
 import { DrawTitle } from './components/draw-title.tsx'
 import { DrawNotices } from './components/notices.tsx'
 import { AreYouInPart, EarlierSealsPart, SealPart } from './components/seal-part.tsx'
+import { SharePart } from './components/share-part.tsx'
 import { PrizesToCome, ReservesPart, WinnersPart } from './components/winners-part.tsx'
 import { drawLead } from './words.ts'
 
@@ -52,6 +53,7 @@ export function Draw({ draw }: { readonly draw: DrawPage }) {
       {drawn ? <Drawn draw={draw} arrived={arrived} /> : null}
       {draw.state === 'cancelled' || draw.state === 'failed' ? <Ended draw={draw} /> : null}
       <HistoryPart draw={draw} />
+      <SharePart draw={draw} />
       <CautionsPart draw={draw} />
     </>
   )

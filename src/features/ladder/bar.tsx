@@ -1,5 +1,6 @@
 import { formatNumber } from '#src/ui/format-number.ts'
-import { coinShape, sideLabel, trim, type LadderCoin } from './geometry.ts'
+import { coinShape, trim, type LadderCoin } from '#shared/sampling/ladder-shape.ts'
+import { sideLabel } from './geometry.ts'
 import { barWords } from './words.ts'
 
 /** The tickets still in, split in proportion; the chosen side filled, the other pale. No side is under 3 px. */

@@ -1,5 +1,5 @@
 import { Fragment } from 'react'
-import { coinShape, type LadderCoin } from './geometry.ts'
+import { coinShape, type LadderCoin } from '#shared/sampling/ladder-shape.ts'
 
 /** The chances of a walk's coins, multiplied out to tickets over tickets. */
 export function ChanceProduct({

@@ -1,7 +1,7 @@
 import type { ReactNode } from 'react'
 import { countOf, formatNumber } from '#src/ui/format-number.ts'
 import { Bar, unshownFigures } from './bar.tsx'
-import { coinShape, fan, type LadderCoin } from './geometry.ts'
+import { coinShape, fan, type LadderCoin } from '#shared/sampling/ladder-shape.ts'
 import { isLong, Weighing } from './weighing.tsx'
 import { coinWords } from './words.ts'
 

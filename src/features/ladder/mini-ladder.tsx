@@ -1,23 +1,6 @@
 import { countOf } from '#src/ui/format-number.ts'
-import { coinShape, fan, trim, type LadderCoin } from './geometry.ts'
+import { miniCoin, miniHeight, miniSize, type LadderCoin, type MiniSize } from '#shared/sampling/ladder-shape.ts'
 import { walkSides } from './words.ts'
-
-interface MiniSize {
-  readonly width: number
-  readonly bar: number
-  readonly fan: number
-}
-
-/** Bars 7 and fans 14 high; long walks are drawn closer, so that 20 coins stay beside their winner. */
-export function miniSize(coins: number, width = 250): MiniSize {
-  if (coins <= 7) return { width, bar: 7, fan: 14 }
-  if (coins <= 13) return { width, bar: 5, fan: 8 }
-  return { width, bar: 4, fan: 5 }
-}
-
-export function miniHeight(coins: number, size = miniSize(coins)): number {
-  return coins * (size.bar + size.fan) + size.bar + 2
-}
 
 interface MiniLadderProps {
   readonly coins: readonly LadderCoin[]
@@ -57,31 +40,15 @@ export function MiniLadder({ coins, size = miniSize(coins.length), keepHeight = 
 }
 
 function MiniCoin({ coin, y, size }: { readonly coin: LadderCoin; readonly y: number; readonly size: MiniSize }) {
-  const shape = coinShape(coin)
-  const split = (shape.leftPercent / 100) * size.width
-  const won = shape.heads ? 'h' : 't'
-  const lost = shape.heads ? 't' : 'h'
-  // No side is under 3 units here either.
-  const lostWidth = Math.max(3, shape.heads ? size.width - split : split)
-  const lines = fan(shape, size.fan, 24, size.width)
+  const shape = miniCoin(coin, size)
+  const [won, lost] = shape.heads ? ['h', 't'] : ['t', 'h']
   return (
     <g transform={`translate(0 ${y})`}>
-      <rect
-        className={`won ${won}`}
-        x={shape.heads ? 0 : trim(split)}
-        width={trim(shape.heads ? split : size.width - split)}
-        height={size.bar}
-      />
-      {shape.certain ? null : (
-        <rect
-          className={`lost ${lost}`}
-          x={trim(shape.heads ? size.width - lostWidth + 0.5 : 0.5)}
-          y="0.5"
-          width={trim(lostWidth - 1)}
-          height={size.bar - 1}
-        />
-      )}
-      <path className={`hair ${won}`} transform={`translate(0 ${size.bar})`} d={lines.fine + lines.hair + lines.lip} />
+      <rect className={`won ${won}`} x={shape.won.x} width={shape.won.width} height={size.bar} />
+      {shape.lost ? (
+        <rect className={`lost ${lost}`} x={shape.lost.x} y="0.5" width={shape.lost.width} height={size.bar - 1} />
+      ) : null}
+      <path className={`hair ${won}`} transform={`translate(0 ${size.bar})`} d={shape.lines} />
     </g>
   )
 }

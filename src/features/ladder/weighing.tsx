@@ -1,4 +1,5 @@
-import { weigh, type LadderCoin } from './geometry.ts'
+import type { LadderCoin } from '#shared/sampling/ladder-shape.ts'
+import { weigh } from './geometry.ts'
 
 const fractionLength = ([left, right]: LadderCoin) => `${left}/${left + right}`.length
 

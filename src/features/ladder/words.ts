@@ -1,5 +1,6 @@
 import { capitalise, countOf, formatNumber, numberWord, ordinal } from '#src/ui/format-number.ts'
-import { coinShape, weigh, type LadderCoin } from './geometry.ts'
+import { coinShape, type LadderCoin } from '#shared/sampling/ladder-shape.ts'
+import { weigh } from './geometry.ts'
 
 /** Keeps a figure on the line of the word before it. */
 const NBSP = '\u00a0'

@@ -6,6 +6,7 @@ import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
 import { countOf } from '#src/ui/format-number.ts'
+import { Link } from '#src/ui/link.tsx'
 import { Notice } from '#src/ui/notice.tsx'
 import { Facts, Part, Title } from '#src/ui/page.tsx'
 import { Empty } from '#src/ui/states.tsx'
@@ -31,6 +32,12 @@ export function Organisation({ organisation }: { readonly organisation: Organisa
         title={organisation.name}
         description={`${organisation.about} All draws of ${organisation.name}, and how each was settled.`}
         path={`/organisations/${organisation.slug}`}
+      />
+      <link
+        rel="alternate"
+        type="application/atom+xml"
+        title={`Draws of ${organisation.name}`}
+        href={`/organisations/${organisation.slug}/feed.atom`}
       />
       <Title title={organisation.name} lead={organisation.about}>
         <Facts
@@ -66,6 +73,19 @@ export function Organisation({ organisation }: { readonly organisation: Organisa
         ) : (
           <DrawList draws={organisation.draws} ownPage />
         )}
+      </Part>
+      <Part title="Follow its draws">
+        <p className="measure">
+          The{' '}
+          <Link plain to={`/organisations/${organisation.slug}/feed.atom`}>
+            Atom feed
+          </Link>{' '}
+          tells a feed reader when a draw opens, is sealed, postponed, cancelled or drawn. For print there is the{' '}
+          <Link plain to={`/organisations/${organisation.slug}/qr.svg`}>
+            QR code of this page
+          </Link>
+          .
+        </p>
       </Part>
     </>
   )

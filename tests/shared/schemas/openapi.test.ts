@@ -65,7 +65,7 @@ describe('the public description', () => {
   })
 
   it('has every public endpoint, and nothing that needs a session', () => {
-    const ours = Object.values(v1).filter((value): value is PublicEndpoint => 'caching' in value)
+    const ours = endpoints.filter((one) => (Object.values(v1) as unknown[]).includes(one))
     expect(ours.length).toBeGreaterThan(5)
     for (const { name, path } of ours) {
       expect(document.paths[path.replace(/:(\w+)/g, '{$1}')]?.get.operationId).toBe(name)

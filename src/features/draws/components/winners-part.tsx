@@ -1,5 +1,6 @@
+import { miniHeight, miniSize } from '#shared/sampling/ladder-shape.ts'
 import type { DrawPage, PickSummary } from '#shared/schemas/api/public.ts'
-import { MiniLadder, miniHeight, miniSize } from '#src/features/ladder/mini-ladder.tsx'
+import { MiniLadder } from '#src/features/ladder/mini-ladder.tsx'
 import { walkSize } from '#src/features/ladder/words.ts'
 import { awardWords } from '#src/lib/award-words.ts'
 import { fraction, oneIn } from '#src/ui/chance-words.ts'
