@@ -1,5 +1,6 @@
 import { cpus } from 'node:os'
 import { parseArgs } from 'node:util'
+import { browserSection } from '#server/cli/bench/browser-section.ts'
 import { rehearsalSection } from '#server/cli/bench/rehearsal-section.ts'
 import { type BenchSection, processorClock, wallClock } from '#server/cli/bench/report.ts'
 import { serverSection } from '#server/cli/bench/server.ts'
@@ -12,7 +13,11 @@ const { values, positionals } = parseArgs({
 })
 const sizes = (values.sizes ?? '10000,100000,1000000').split(',').map(Number)
 const clock = values['processor-time'] ? processorClock : wallClock
-const sections: readonly BenchSection[] = [rehearsalSection(sizes, clock), serverSection]
+const sections: readonly BenchSection[] = [
+  rehearsalSection(sizes, clock),
+  browserSection(Math.max(...sizes)),
+  serverSection,
+]
 const wanted = sections.filter(({ name }) => positionals.length === 0 || positionals.includes(name))
 
 if (wanted.length === 0 || !sizes.every((size) => Number.isInteger(size) && size >= 100 && size <= 2_000_000)) {
