@@ -35,6 +35,7 @@ const PATHS = [
   '/developers',
   '/log',
   '/log?page=2',
+  '/log?at=17',
   ...allDraws().flatMap((draw) => [`/draws/${draw.slug}`, `/draws/${draw.slug}/check`, `/draws/${draw.slug}/hall`]),
   '/draws/bell-ropes-2026/picks/0',
   '/draws/bell-ropes-2026/picks/7',

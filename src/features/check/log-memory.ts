@@ -1,10 +1,9 @@
-/** The newest checkpoint of the site's log that this browser has seen and verified, as the signed note. */
-const PLACE = 'evenpenny-log-head'
+import { LOG_MEMORY } from '#src/lib/log-memory.ts'
 
 /** Null where nothing is remembered, or where the browser keeps nothing for this site. */
 export function rememberedHead(): string | null {
   try {
-    return localStorage.getItem(PLACE)
+    return localStorage.getItem(LOG_MEMORY)
   } catch {
     return null
   }
@@ -12,7 +11,7 @@ export function rememberedHead(): string | null {
 
 export function rememberHead(note: string): void {
   try {
-    localStorage.setItem(PLACE, note)
+    localStorage.setItem(LOG_MEMORY, note)
   } catch {
     // A private window, or storage that is full: the next check then compares with the archive only.
   }

@@ -6,12 +6,14 @@ import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
 import { Announcer } from '#src/ui/announcer.tsx'
+import { drawLogQuery } from './api/get-draw-log.ts'
 import { drawQuery } from './api/get-draw.ts'
 import { ExactFiguresPart, SettledPart, SpreadPart, WitnessesPart } from './components/after-parts.tsx'
 import { EnterPart, FixesPart, OddsPart, OddsToCome, PrizesPart, TermsPart } from './components/before-parts.tsx'
-import { CautionsPart, CheckPart, HistoryPart } from './components/check-parts.tsx'
+import { CautionsPart, CheckPart } from './components/check-parts.tsx'
 import { CountdownPart } from './components/countdown-part.tsx'
 import { DrawTitle } from './components/draw-title.tsx'
+import { HistoryPart } from './components/history-part.tsx'
 import { DrawNotices } from './components/notices.tsx'
 import { AreYouInPart, EarlierSealsPart, SealPart } from './components/seal-part.tsx'
 import { SharePart } from './components/share-part.tsx'
@@ -19,7 +21,8 @@ import { PrizesToCome, ReservesPart, WinnersPart } from './components/winners-pa
 import { drawLead } from './words.ts'
 
 export async function loader(args: LoaderFunctionArgs) {
-  await load(args, (api) => drawQuery(api, args.params.slug ?? ''))
+  const draw = await load(args, (api) => drawQuery(api, args.params.slug ?? ''))
+  await load(args, (api) => drawLogQuery(api, draw))
   return null
 }
 

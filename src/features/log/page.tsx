@@ -1,21 +1,21 @@
 import { useSuspenseQuery } from '@tanstack/react-query'
 import { useSearchParams, type LoaderFunctionArgs } from 'react-router'
 import { useApp } from '#src/lib/app-context.ts'
-import { eventMeaning, eventTitle } from '#src/lib/event-words.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
-import { Digest } from '#src/ui/digest.tsx'
-import { countOf } from '#src/ui/format-number.ts'
-import { formatBrief } from '#src/ui/format-time.ts'
-import { Link } from '#src/ui/link.tsx'
+import { countOf, formatNumber } from '#src/ui/format-number.ts'
 import { Part, Title } from '#src/ui/page.tsx'
 import { Pager } from '#src/ui/pager.tsx'
 import { Empty } from '#src/ui/states.tsx'
-import { logPageFrom, logQuery } from './api/get-log.ts'
+import { logPlaceFrom, logQuery, logStateQuery } from './api/get-log.ts'
+import { Entry } from './components/entry.tsx'
+import { GoToEntry } from './components/go-to-entry.tsx'
+import { CheckLogPart, StandingPart } from './components/standing-part.tsx'
+import { OverduePart } from './components/overdue-part.tsx'
 
 export async function loader(args: LoaderFunctionArgs) {
-  const page = logPageFrom(new URL(args.request.url).searchParams)
-  await load(args, (api) => logQuery(api, page))
+  const place = logPlaceFrom(new URL(args.request.url).searchParams)
+  await Promise.all([load(args, (api) => logQuery(api, place)), load(args, logStateQuery)])
   return null
 }
 
@@ -25,42 +25,33 @@ const LEAD =
 export function Component() {
   const { api } = useApp()
   const [params] = useSearchParams()
-  const page = logPageFrom(params)
-  const { data } = useSuspenseQuery(logQuery(api, page))
+  const place = logPlaceFrom(params)
+  const { data } = useSuspenseQuery(logQuery(api, place))
+  const { data: state } = useSuspenseQuery(logStateQuery(api))
+  const missing = place.at !== undefined && place.at >= data.total
   return (
     <>
-      <Head title="The log" description={LEAD} {...(page > 1 ? {} : { path: '/log' })} />
+      <Head
+        title="The log"
+        description={LEAD}
+        {...(place.page > 1 || place.at !== undefined ? {} : { path: '/log' })}
+      />
       <Title title="The log" lead={LEAD} />
+      <StandingPart state={state} />
+      <OverduePart draws={state.overdue} />
       <Part title="Entries" note={<p>{countOf(data.total, 'entry', 'entries')}. Times are UTC.</p>}>
+        <GoToEntry asked={params.get('at') ?? ''} />
+        {missing ? (
+          <p>
+            There is no entry {formatNumber(place.at ?? 0)} yet: the newest is entry {formatNumber(data.total - 1)}.
+          </p>
+        ) : null}
         {data.items.length === 0 ? (
           <Empty title={data.total === 0 ? 'Nothing has happened yet.' : 'There is no such page of the log.'} />
         ) : (
           <ol className="account">
             {data.items.map((line) => (
-              <li key={line.index} id={`entry-${line.index}`}>
-                <time dateTime={line.at}>{formatBrief(line.at, 'UTC', 0)}</time>
-                <div>
-                  <h3>{eventTitle(line.event)}</h3>
-                  <p>
-                    {line.draw ? <Link to={`/draws/${line.draw.slug}`}>{line.draw.title}</Link> : null}
-                    {line.draw && line.organisation ? ', ' : ''}
-                    {line.organisation ? (
-                      <Link to={`/organisations/${line.organisation.slug}`}>{line.organisation.name}</Link>
-                    ) : null}
-                    {line.draw || line.organisation ? '. ' : ''}
-                    {eventMeaning(line.event)}
-                  </p>
-                  {line.note ? <p className="mt-0">“{line.note}”</p> : null}
-                  <div className="exact">
-                    Entry {line.index}
-                    {line.digest ? (
-                      <>
-                        , <Digest value={line.digest} what={`the digest of entry ${line.index}`} />
-                      </>
-                    ) : null}
-                  </div>
-                </div>
-              </li>
+              <Entry key={line.index} line={line} asked={line.index === place.at} />
             ))}
           </ol>
         )}
@@ -72,6 +63,7 @@ export function Component() {
           noun="entries"
         />
       </Part>
+      <CheckLogPart head={state.head} />
     </>
   )
 }

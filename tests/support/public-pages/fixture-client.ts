@@ -1,6 +1,7 @@
 import type { ApiClient, CallInput, Endpoint, ResponseOf } from '#shared/schemas/endpoint.ts'
 import { Problem } from '#shared/schemas/problem.ts'
 import { allDraws, cardOf, logPage, organisationPage, pickPageOf, steepPick } from './fixtures.ts'
+import { drawLogOf, logStateFixture } from './log-fixtures.ts'
 import type { DrawPage } from '#shared/schemas/api/public.ts'
 
 type Params = Record<string, unknown>
@@ -58,6 +59,8 @@ export function fixtureClient(draws: readonly DrawPage[] = allDraws()): ApiClien
       return organisationPage()
     },
     getLog: (_, query) => logPage(Number(query.page ?? 1)),
+    getLogState: () => logStateFixture(),
+    getDrawLog: (params) => drawLogOf(find(params)),
   }
   return {
     async call<E extends Endpoint>(endpoint: E, input: CallInput<E> = {}): Promise<ResponseOf<E>> {

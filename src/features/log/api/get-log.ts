@@ -1,11 +1,25 @@
 import { queryOptions } from '@tanstack/react-query'
+import { getLogState } from '#shared/schemas/api/log.ts'
 import { getLog } from '#shared/schemas/api/public.ts'
 import type { ApiClient } from '#shared/schemas/endpoint.ts'
 
-/** The page number of an address; 1 where it has none or a wrong one. */
-export function logPageFrom(params: URLSearchParams): number {
-  return getLog.query.shape.page.safeParse(params.get('page') ?? undefined).data ?? 1
+/** Which part of the log an address asks for: a page, or the one on which an entry stands. */
+export interface LogPlace {
+  readonly page: number
+  readonly at?: number
 }
 
-export const logQuery = (api: ApiClient, page: number) =>
-  queryOptions({ queryKey: ['log', page], queryFn: () => api.call(getLog, { query: { page } }) })
+/** The place that an address names; the first page where it names none or a wrong one. */
+export function logPlaceFrom(params: URLSearchParams): LogPlace {
+  const shape = getLog.query.shape
+  const page = shape.page.safeParse(params.get('page') ?? undefined).data ?? 1
+  const asked = params.get('at')?.trim()
+  const at = asked ? shape.at.safeParse(asked).data : undefined
+  return at === undefined ? { page } : { page, at }
+}
+
+export const logQuery = (api: ApiClient, place: LogPlace) =>
+  queryOptions({ queryKey: ['log', place], queryFn: () => api.call(getLog, { query: place }) })
+
+export const logStateQuery = (api: ApiClient) =>
+  queryOptions({ queryKey: ['log-state'], queryFn: () => api.call(getLogState) })
