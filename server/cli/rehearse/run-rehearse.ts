@@ -88,6 +88,10 @@ async function rehearse(options: RehearseArguments, output: Output): Promise<0 |
   const { count, tickets } = sealed.seal.entries
   output.out('')
   output.out(`Rehearsed: ${drawn.result.picks.length} picks from ${count} entrants with ${tickets} tickets.`)
+  const wanted = prizes.reduce((sum, quantity) => sum + quantity, 0) + reserves
+  if (drawn.result.picks.length < wanted) {
+    output.out(`The draw ended early: it has ${wanted} prizes and reserves, and nobody is left who can win one.`)
+  }
   output.out(`Seal ${toHex(sealed.sealDigest)}`)
   output.out(`Key  ${sealed.seal.key} (made for this rehearsal, and gone)`)
   output.out(

@@ -30,6 +30,7 @@ describe('npm run rehearse', () => {
     const rehearsed = await run(runRehearse, ...args, '--rule', rule, '--receipts', receipts)
     expect(rehearsed.errors).toBe('')
     expect(rehearsed.status).toBe(0)
+    expect(rehearsed.out).not.toContain('ended early')
     for (const step of ['import', 'commitments and tree', 'seal', 'draw', 'archive', 'receipts']) {
       expect(rehearsed.out).toMatch(new RegExp(`^${step} +\\d+ ms$`, 'm'))
     }
@@ -51,6 +52,14 @@ describe('npm run rehearse', () => {
     // The default label gives no family name and no address away.
     expect(labels).toMatch(/"label":"Member K\."/)
     expect(labels).not.toContain('Kask')
+  })
+
+  it('says where there are more prizes than entrants who can win one', async () => {
+    const args = ['--entrants', at('members.csv'), '--prizes', '30', '--reserves', '11', '--out', at('early.zip')]
+    const early = await run(runRehearse, ...args)
+    expect([early.status, early.errors]).toEqual([0, ''])
+    expect(early.out).toContain('Rehearsed: 40 picks from 40 entrants')
+    expect(early.out).toContain('ended early: it has 41 prizes and reserves')
   })
 
   it('draws two different lists of winners from the same file', async () => {
