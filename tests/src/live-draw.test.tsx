@@ -8,6 +8,7 @@ import { pollingInterval } from '#src/features/draws/api/get-draw.ts'
 import { Component } from '#src/features/draws/draw-page.tsx'
 import type { DrawPage } from '#shared/schemas/api/public.ts'
 import type { ApiClient } from '#shared/schemas/endpoint.ts'
+import { oddsOf } from '#tests/support/public-pages/fixture-client.ts'
 import { drawnDraw, sealedDraw } from '#tests/support/public-pages/fixtures.ts'
 import { drawLogOf } from '#tests/support/public-pages/log-fixtures.ts'
 
@@ -22,9 +23,12 @@ describe('a sealed draw’s page in an open browser', () => {
   it('shows the result by itself, keeps its parts in their places, announces it and leaves focus alone', async () => {
     vi.useFakeTimers({ now: new Date('2026-06-19T18:29:58Z'), shouldAdvanceTime: true })
     let answer: DrawPage = soon()
-    const api: ApiClient = {
-      call: vi.fn((endpoint) => Promise.resolve((endpoint.name === 'getDraw' ? answer : drawLogOf(answer)) as never)),
+    const answers: Record<string, () => unknown> = {
+      getDraw: () => answer,
+      getDrawOdds: () => oddsOf(answer),
+      getDrawLog: () => drawLogOf(answer),
     }
+    const api: ApiClient = { call: vi.fn((endpoint) => Promise.resolve(answers[endpoint.name]?.() as never)) }
     const router = createMemoryRouter([{ path: '/draws/:slug', Component }], { initialEntries: ['/draws/live'] })
     await act(async () => {
       render(

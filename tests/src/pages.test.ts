@@ -3,7 +3,7 @@ import { describe, expect, it } from 'vitest'
 import { escapeJson } from '#src/app/state.ts'
 import { render } from '#src/entry/server.tsx'
 import type { ApiClient } from '#shared/schemas/endpoint.ts'
-import { fixtureClient } from '#tests/support/public-pages/fixture-client.ts'
+import { fixtureClient, oddsOf } from '#tests/support/public-pages/fixture-client.ts'
 import { allDraws, drawnDraw, hex, openDraw, sealedDraw } from '#tests/support/public-pages/fixtures.ts'
 
 const ORIGIN = 'https://draws.example'
@@ -86,7 +86,7 @@ describe.each(PATHS)('%s', (path) => {
 })
 
 describe('a draw’s page', () => {
-  it('open: how to enter, price, prizes, terms, and no odds yet', async () => {
+  it('open: how to enter, price, prizes, terms, and the odds of tickets added now', async () => {
     const { main, text, document } = await get('/draws/open-2026')
     expect(text('h1')).toBe('Ringers’ Autumn Draw')
     expect(text('.lead')).toBe(
@@ -97,22 +97,59 @@ describe('a draw’s page', () => {
     )
     expect(main).toContain('A month of bread from Sennow Mill, three of them')
     expect(main).toContain('One ticket costs £2.')
-    expect(document.querySelector('table')).toBeNull()
+    // Twelve entrants hold 69 tickets in the fixture; nobody learns who holds what.
+    expect(main).toContain('So far the list holds 69 tickets.')
+    const rows = [...document.querySelectorAll('.odds-table tbody tr')].map((row) => row.children[1]?.textContent)
+    expect(rows[0]).toBe('1 in 70 (1/70, 1.43\u00a0%)')
+    expect(rows[1]).toBe('about 1 in 15 (5/74, 6.76\u00a0%)')
+    expect(main).not.toContain('sealed list')
     expect(document.querySelector('link[rel=canonical]')?.getAttribute('href')).toBe(`${ORIGIN}/draws/open-2026`)
   })
-  it('sealed: countdown in figures, whole seal, what it fixes, exact odds for 1, 5 and 20 tickets', async () => {
+  it('sealed: countdown in figures, whole seal, what it fixes, exact odds of each number of tickets', async () => {
     const { main, document, text } = await get('/draws/sealed-2026')
     const total = sealedDraw().seal?.tickets ?? 0
     expect(text('.count')).toBe('2 days 1 hour 26 minutes')
     expect(main.replace(/\s/g, '')).toContain(hex('seal'))
-    const rows = [...document.querySelectorAll('tbody tr')].map((row) =>
+    const rows = [...document.querySelectorAll('.odds-table tbody tr')].map((row) =>
       [...row.children].map((cell) => cell.textContent),
     )
-    expect(rows.map((row) => row[2])).toEqual([`1/${total}`, `5/${total}`, `20/${total}`])
-    expect(rows[0]?.[1]).toBe(`1 in ${total}`)
+    const { rows: odds } = oddsOf(sealedDraw())
+    expect(rows.map((row) => row[0])).toEqual(odds.map(({ tickets }) => `${tickets} ticket${tickets === 1 ? '' : 's'}`))
+    expect(rows[0]?.[1]).toBe(`1 in ${total} (1/${total}, ${((1 / total) * 100).toFixed(3)}\u00a0%)`)
+    expect(rows[0]?.[2]).toContain(odds[0]?.prize.decimal)
+    // One bar a row, the last as wide as there is room.
+    const bars = [...document.querySelectorAll('.odds-chart rect')].map((bar) => bar.getAttribute('width'))
+    expect([bars.length, bars.at(-1)]).toEqual([odds.length, '100.00%'])
     expect(main).toContain('It does not exist yet, and nobody can choose it.')
-    expect(document.querySelectorAll('.waffle .dot-in')).toHaveLength(26)
+    const least = [odds[0], odds[(odds.length - 1) >> 1], odds.at(-1)]
+    expect(document.querySelectorAll('.waffle .dot-in')).toHaveLength(
+      least.reduce((sum, row) => sum + (row?.tickets ?? 0), 0),
+    )
     expect(main).not.toContain('Who won')
+  })
+  it('sealed: answers for a number of tickets without JavaScript, says where nobody holds as many, and refuses junk', async () => {
+    const { document, main } = await get('/draws/sealed-2026?tickets=1000')
+    const total = sealedDraw().seal?.tickets ?? 0
+    const asked = oddsOf(sealedDraw(), 1000).asked
+    expect(document.querySelector<HTMLInputElement>('form.odds-form input')?.value).toBe('1000')
+    expect(main).toContain(`1,000 tickets of the ${(total + 1000).toLocaleString('en-GB')} in.`)
+    expect(main).toContain(asked?.prize.decimal)
+    expect(main).toContain('Nobody in the sealed list holds 1,000 tickets.')
+    const wrong = await get('/draws/sealed-2026?tickets=1.5')
+    expect(wrong.status).toBe(200)
+    expect(wrong.text('.odds-form .fault')).toBe('Error: Type a whole number from 1 to 4,294,967,295.')
+    expect(wrong.main).not.toContain('Nobody in the sealed list')
+  })
+  it('stands without its odds where they fail', async () => {
+    const api = fixtureClient()
+    const failing: ApiClient = {
+      call: (endpoint, input) =>
+        endpoint.name === 'getDrawOdds' ? Promise.reject(new Error('out of order')) : api.call(endpoint, input),
+    }
+    const { status, main } = await get('/draws/sealed-2026', failing)
+    expect(status).toBe(200)
+    expect(main).toContain('What it fixes')
+    expect(main).not.toContain('If you hold')
   })
   it('past its time: says what it waits for, and that nothing else may stand in', async () => {
     const { main } = await get('/draws/waiting-2026')

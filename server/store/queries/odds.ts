@@ -27,7 +27,7 @@ const BEFORE_CLOSING = [1, 5, 20]
 type DrawRow = typeof draw.$inferSelect
 type Reading = Pick<Services, 'db' | 'clock'>
 
-/** A draw's odds as the public sees them; null where there is no such draw, or none to show in its state. */
+/** A draw's odds as the public sees them: none between the closing and the seal. Null where there is no such draw. */
 export async function getDrawOdds(
   services: Reading,
   input: { readonly slug: string; readonly tickets?: number | undefined },
@@ -39,19 +39,43 @@ export async function getDrawOdds(
   if (!row) return null
   const inForce = sealInForce(await sealsOf(services.db, row.id))
   if (inForce) return viewOfSeal(services, inForce, input.tickets)
-  if (row.state !== 'open') return null
+  if (row.state !== 'open') {
+    const none = {
+      basis: 'present' as const,
+      entrants: 0,
+      tickets: 0,
+      prizes: 0,
+      rule: row.rule,
+      reserves: row.reserves,
+    }
+    return presentOdds(none, 'empty')
+  }
   return viewOfPresent(services, row, { tickets: input.tickets, basis: 'joining' })
 }
 
-/** A draw's odds as its office sees them; `prizes` stands in for the items that are saved. */
+/**
+ * A draw's odds as its office sees them. `prizes` stands in for the items that are saved; `entrants` and `allTickets`,
+ * where both are given, for a list that is not there yet.
+ */
 export async function getOfficeOdds(
   services: Reading,
-  input: { readonly draw: string; readonly tickets?: number | undefined; readonly prizes?: number | undefined },
+  input: {
+    readonly draw: string
+    readonly tickets?: number | undefined
+    readonly prizes?: number | undefined
+    readonly entrants?: number | undefined
+    readonly allTickets?: number | undefined
+  },
 ): Promise<OddsView | null> {
   const [row] = await services.db.select().from(draw).where(eq(draw.id, input.draw))
   if (!row) return null
   const inForce = sealInForce(await sealsOf(services.db, row.id))
   if (inForce) return viewOfSeal(services, inForce, input.tickets)
+  const { entrants, allTickets } = input
+  if (entrants !== undefined && allTickets !== undefined) {
+    const prizes = input.prizes ?? (await itemsOf(services.db, row.id))
+    return viewOfExpected(row, spreadEvenly(entrants, Math.max(entrants, allTickets)), prizes, input.tickets)
+  }
   return viewOfPresent(services, row, { tickets: input.tickets, prizes: input.prizes, basis: 'present' })
 }
 
@@ -73,6 +97,31 @@ async function viewOfSeal({ db }: Reading, seal: SealRow, tickets: number | unde
     ...termsOfSeal(seal),
   }
   return presentOdds(about, await inGoodTime(oddsOfSeal(db, seal)), { chosen: chosenCounts, asked: tickets })
+}
+
+/** One more entrant beside a list that somebody expects. */
+async function viewOfExpected(
+  { rule, reserves }: DrawRow,
+  list: TicketList,
+  prizes: number,
+  tickets: number | undefined,
+): Promise<OddsView> {
+  const about = { basis: 'expected' as const, entrants: list.entrants, tickets: list.tickets, rule, reserves, prizes }
+  if (prizes === 0 || prizes + reserves > MAX_PICKS) return presentOdds(about, 'empty')
+  const odds = await workOut(list, { rule, reserves, prizes })
+  return presentOdds(about, odds, { chosen: () => BEFORE_CLOSING, asked: tickets })
+}
+
+/** A list of so many entrants and tickets in which nobody holds two tickets more than another. */
+function spreadEvenly(entrants: number, tickets: number): TicketList {
+  const each = Math.floor(tickets / entrants)
+  const more = tickets - each * entrants
+  return listOfGroups(
+    [
+      { tickets: each, entrants: entrants - more },
+      { tickets: each + 1, entrants: more },
+    ].filter((group) => group.entrants > 0),
+  )
 }
 
 async function viewOfPresent(

@@ -16,7 +16,8 @@ export function presentOdds(
   },
 ): OddsView {
   if (typeof odds === 'string') return { ...about, state: odds, rows: [], asked: null }
-  const of = (tickets: number) => row(about.basis === 'joining' ? odds.joining(tickets) : odds.of(tickets))
+  const joins = about.basis === 'joining' || about.basis === 'expected'
+  const of = (tickets: number) => row(joins ? odds.joining(tickets) : odds.of(tickets))
   return {
     ...about,
     state: 'ready',

@@ -1,5 +1,5 @@
 import { z } from 'zod'
-import { MAX_PICKS, MAX_TICKETS_EACH } from '../../protocol/limits.ts'
+import { MAX_ENTRANTS, MAX_PICKS, MAX_TICKETS_EACH } from '../../protocol/limits.ts'
 import type { Endpoint } from '../endpoint.ts'
 import { empty, rule, slug, totalTickets, uuid } from '../values.ts'
 
@@ -32,8 +32,11 @@ export type TicketOddsView = z.infer<typeof ticketOdds>
 
 /** What some numbers of tickets give in a draw. */
 export const oddsView = z.object({
-  /** Of the sealed list, of the list as it stands now, or of one more entrant beside the list as it stands now. */
-  basis: z.enum(['sealed', 'present', 'joining']),
+  /**
+   * Of the sealed list, of the list as it stands now, of one more entrant beside the list as it stands now, or beside a
+   * list that somebody expects.
+   */
+  basis: z.enum(['sealed', 'present', 'joining', 'expected']),
   /**
    * `working` while a list with very many different ticket counts is being worked out, `unknown` where that is left to
    * the seal, `empty` where there is no ticket or no prize yet: no rows then.
@@ -68,9 +71,16 @@ export const getOfficeOdds = {
   name: 'getOfficeOdds',
   method: 'GET',
   path: '/api/office/draws/:draw/odds',
-  summary: 'What numbers of tickets give with the present list; with another number of prizes, where one is given',
+  summary: 'What numbers of tickets give with the present list, or with the list and the prizes that are expected',
   params: z.object({ draw: uuid }),
-  query: z.object({ tickets: ticketsAsked, prizes: z.coerce.number().int().min(1).max(MAX_PICKS).optional() }),
+  query: z.object({
+    tickets: ticketsAsked,
+    /** Items to be won, in place of those that are saved. */
+    prizes: z.coerce.number().int().min(1).max(MAX_PICKS).optional(),
+    /** An expected list in place of the present one: so many entrants, with so many tickets together, spread evenly. */
+    entrants: z.coerce.number().int().min(1).max(MAX_ENTRANTS).optional(),
+    allTickets: z.coerce.number().int().min(1).max(1_000_000_000).optional(),
+  }),
   body: empty,
   response: oddsView,
 } as const satisfies Endpoint

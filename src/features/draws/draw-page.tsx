@@ -5,16 +5,19 @@ import type { DrawPage } from '#shared/schemas/api/public.ts'
 import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
+import { ticketsAsked } from '#src/lib/tickets-asked.ts'
 import { Announcer } from '#src/ui/announcer.tsx'
 import { drawLogQuery } from './api/get-draw-log.ts'
 import { drawQuery } from './api/get-draw.ts'
+import { hasOdds, oddsQuery } from './api/get-odds.ts'
 import { ExactFiguresPart, SettledPart, SpreadPart, WitnessesPart } from './components/after-parts.tsx'
-import { EnterPart, FixesPart, OddsPart, OddsToCome, PrizesPart, TermsPart } from './components/before-parts.tsx'
+import { EnterPart, FixesPart, PrizesPart, TermsPart } from './components/before-parts.tsx'
 import { CautionsPart, CheckPart } from './components/check-parts.tsx'
 import { CountdownPart } from './components/countdown-part.tsx'
 import { DrawTitle } from './components/draw-title.tsx'
 import { HistoryPart } from './components/history-part.tsx'
 import { DrawNotices } from './components/notices.tsx'
+import { OddsPart } from './components/odds-part.tsx'
 import { AreYouInPart, EarlierSealsPart, SealPart } from './components/seal-part.tsx'
 import { SharePart } from './components/share-part.tsx'
 import { PrizesToCome, ReservesPart, WinnersPart } from './components/winners-part.tsx'
@@ -23,7 +26,15 @@ import { drawLead } from './words.ts'
 export async function loader(args: LoaderFunctionArgs) {
   const draw = await load(args, (api) => drawQuery(api, args.params.slug ?? ''))
   await load(args, (api) => drawLogQuery(api, draw))
+  await loadOdds(args, draw)
   return null
+}
+
+/** The page stands without its odds: whatever is wrong with them is no reason to hide a draw. */
+async function loadOdds(args: LoaderFunctionArgs, draw: DrawPage): Promise<void> {
+  if (!hasOdds(draw)) return
+  const asked = ticketsAsked(new URL(args.request.url).searchParams.get('tickets'))
+  await load(args, (api) => oddsQuery(api, draw, asked === 'wrong' ? null : asked)).catch(() => null)
 }
 
 export function Component() {
@@ -79,7 +90,7 @@ function Open({ draw }: PartsProps) {
     <>
       <EnterPart draw={draw} />
       <PrizesPart draw={draw} />
-      <OddsToCome />
+      <OddsPart draw={draw} />
       <TermsPart draw={draw} />
     </>
   )
@@ -89,7 +100,7 @@ function Closed({ draw }: PartsProps) {
   return (
     <>
       <PrizesPart draw={draw} />
-      <OddsToCome />
+      <OddsPart draw={draw} />
       <TermsPart draw={draw} />
     </>
   )
@@ -118,6 +129,7 @@ function Drawn({ draw, arrived }: PartsProps & { readonly arrived: boolean }) {
       {arrived ? null : <WinnersPart draw={draw} arrived={false} />}
       <ReservesPart draw={draw} />
       <SpreadPart draw={draw} />
+      {arrived ? null : <OddsPart draw={draw} />}
       <SettledPart draw={draw} />
       <ExactFiguresPart draw={draw} />
       <CheckPart draw={draw} />

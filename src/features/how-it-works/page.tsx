@@ -21,6 +21,7 @@ export function Component() {
       <OneCoin />
       <OneWalk />
       <TossedByHand />
+      <Odds />
       <WhatIsShown />
       <Cautions />
     </>
@@ -176,6 +177,32 @@ function TossedByHand() {
           Yuval Peres showed in 1992 how to get nearly all the fairness that the dropped pairs still hold, by doing the
           same again with what the first pass leaves over. The tosses come in rounds of a length fixed in the seal, so
           that nobody can stop at a moment that suits them.
+        </p>
+      </div>
+    </Part>
+  )
+}
+
+function Odds() {
+  return (
+    <Part title="How the odds are worked out" id="odds">
+      <div className="measure">
+        <p>
+          The chance of the first prize is the tickets held over all the tickets in: 9 of 142 tickets have a chance of
+          9/142, about 1 in 16. Over several prizes it is more than that, and not simply as many times more, because
+          each prize changes what is left.
+        </p>
+        <p>
+          Where every ticket counts for itself, a ticket that has won leaves the list. The chance that none of yours is
+          among those drawn is a plain quotient of two numbers of ways, the hypergeometric distribution.
+        </p>
+        <p>
+          Where an entrant wins one prize at most, all the tickets of a winner leave. Statisticians call it successive
+          sampling. Give every ticket a clock that rings at a moment of its own, and the first rings of the entrants
+          come in the order of the draw; you win when one of yours rings before the last of the prizes has gone to
+          others. That chance is an integral, worked out to nine digits. For small draws it is compared with going
+          through everything that can happen, which gives a fraction; the site’s tests also compare it with another
+          statistics program and with a million draws.
         </p>
       </div>
     </Part>

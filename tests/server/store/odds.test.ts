@@ -59,7 +59,7 @@ describe('a draw’s odds', () => {
   })
   it('a draft and a closed list have none in public; the office sees them, and what more prizes would do', async () => {
     const id = await makeClosed(site.services, office, { title: 'Odds, closed' })
-    expect(await publicOdds(id)).toBeNull()
+    expect(await publicOdds(id)).toMatchObject({ state: 'empty', rows: [], entrants: 0, tickets: 0 })
     const few = await getOfficeOdds(site.services, { draw: id, prizes: 1 })
     const more = await getOfficeOdds(site.services, { draw: id, prizes: 2 })
     expect([few?.basis, few?.prizes, more?.prizes]).toEqual(['present', 1, 2])
@@ -71,5 +71,8 @@ describe('a draw’s odds', () => {
     expect(await publicOdds(draft)).toBeNull()
     expect(await getOfficeOdds(site.services, { draw: draft })).toMatchObject({ state: 'empty', rows: [] })
     expect(await getDrawOdds(site.services, { slug: 'no-such-draw' })).toBeNull()
+    const expected = await getOfficeOdds(site.services, { draw: draft, entrants: 100, allTickets: 250, tickets: 2 })
+    expect(expected).toMatchObject({ basis: 'expected', state: 'ready', entrants: 100, tickets: 250 })
+    expect(expected?.asked).toMatchObject({ total: 252, first: { over: 1, under: 126 } })
   })
 })

@@ -1,3 +1,8 @@
+import { presentOdds } from '#server/store/queries/present-odds.ts'
+import { chosenCounts } from '#shared/odds/chosen-counts.ts'
+import { runOdds } from '#shared/odds/odds.ts'
+import { listOfCounts, listOfGroups } from '#shared/odds/ticket-groups.ts'
+import type { OddsView } from '#shared/schemas/api/odds.ts'
 import type { ApiClient, CallInput, Endpoint, ResponseOf } from '#shared/schemas/endpoint.ts'
 import { Problem } from '#shared/schemas/problem.ts'
 import { allDraws, cardOf, logPage, organisationPage, pickPageOf, steepPick } from './fixtures.ts'
@@ -5,6 +10,29 @@ import { drawLogOf, logStateFixture } from './log-fixtures.ts'
 import type { DrawPage } from '#shared/schemas/api/public.ts'
 
 type Params = Record<string, unknown>
+
+/** Twelve entrants of an open draw, and what one more would get. */
+const SO_FAR = [1, 1, 2, 2, 2, 3, 5, 5, 8, 10, 10, 20]
+
+/** The odds of a fixture, by the code that works them out for the site. */
+export function oddsOf(draw: DrawPage, asked?: number): OddsView {
+  const { seal, spread } = draw
+  const terms = {
+    rule: seal?.rule ?? draw.rule,
+    reserves: seal?.reserves ?? draw.reserves,
+    prizes: (seal?.prizes ?? draw.prizes).reduce((sum, { quantity }) => sum + quantity, 0),
+  }
+  const list =
+    !seal || !spread
+      ? listOfCounts(SO_FAR)
+      : spread.kind === 'leaves'
+        ? listOfCounts(spread.tickets)
+        : listOfGroups(spread.counts)
+  const basis = seal ? ('sealed' as const) : ('joining' as const)
+  const about = { basis, entrants: list.entrants, tickets: list.tickets, ...terms }
+  const chosen = seal ? chosenCounts : () => [1, 5, 20]
+  return presentOdds(about, runOdds(list, terms), { chosen, asked })
+}
 
 function missing(detail: string): Problem {
   return new Problem({ type: 'about:blank', title: 'Not found', status: 404, detail })
@@ -39,6 +67,7 @@ export function fixtureClient(draws: readonly DrawPage[] = allDraws()): ApiClien
       return { items: found.map(cardOf), total: found.length, page: Number(query.page ?? 1), pageSize: 20 }
     },
     getDraw: (params) => find(params),
+    getDrawOdds: (params, query) => oddsOf(find(params), query.tickets as number | undefined),
     getPick: (params) => {
       if (params.slug === 'steep-2026') return steepPick()
       const page = pickPageOf(find(params), Number(params.pick))

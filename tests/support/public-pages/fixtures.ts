@@ -221,6 +221,7 @@ export function sealedDraw(over: Partial<DrawPage> = {}): DrawPage {
     state: 'sealed',
     now: '2026-06-17T17:04:00Z',
     seal,
+    spread: { kind: 'leaves', tickets: [...SMALL], winners: [] },
     witnesses: closed.witnesses.map((witness) => ({
       ...witness,
       statements: [

@@ -1,11 +1,8 @@
 import type { DrawPage } from '#shared/schemas/api/public.ts'
-import { fraction, oneIn } from '#src/ui/chance-words.ts'
-import { DataTable } from '#src/ui/data-table.tsx'
 import { countOf, formatMoney, formatNumber, numberWord } from '#src/ui/format-number.ts'
 import { formatMoment, zoneName } from '#src/ui/format-time.ts'
 import { Figures } from '#src/ui/figures.tsx'
 import { Part } from '#src/ui/page.tsx'
-import { Waffle } from '#src/ui/waffle.tsx'
 import { prizeItems } from '../words.ts'
 
 export function EnterPart({ draw }: { readonly draw: DrawPage }) {
@@ -86,62 +83,6 @@ export function TermsPart({ draw }: { readonly draw: DrawPage }) {
       ) : (
         text
       )}
-    </Part>
-  )
-}
-
-/** What cannot be known yet about the odds. */
-export function OddsToCome() {
-  return (
-    <Part title="What are the odds?">
-      <p className="measure">
-        Every ticket weighs the same, bought or free. Your chance of the first prize is the tickets you hold over all
-        the tickets in. How many are in is known when the list is sealed, before the draw, and stands here then.
-      </p>
-    </Part>
-  )
-}
-
-const HELD = [1, 5, 20]
-
-export function OddsPart({ draw }: { readonly draw: DrawPage }) {
-  const total = draw.seal?.tickets ?? 0
-  const rows = HELD.filter((held) => held <= total)
-  if (rows.length === 0) return null
-  return (
-    <Part title="What are the odds?" note={<p>Of the first prize</p>}>
-      {total <= 200 ? (
-        <div className="waffles">
-          {rows.map((held) => (
-            <figure key={held}>
-              <Waffle filled={held} total={total} />
-              <figcaption>
-                <b>{countOf(held, 'ticket')}</b>
-                <br />
-                {held} of the {formatNumber(total)}
-              </figcaption>
-            </figure>
-          ))}
-        </div>
-      ) : null}
-      <DataTable
-        rows={rows}
-        rowKey={String}
-        columns={[
-          { key: 'held', head: 'If you hold', rowHead: true, cell: (held) => countOf(held, 'ticket') },
-          { key: 'first', head: 'First prize', numeric: true, cell: (held) => oneIn(held, total) },
-          {
-            key: 'exact',
-            head: 'exactly',
-            numeric: true,
-            cell: (held) => <span className="mono">{fraction(held, total)}</span>,
-          },
-        ]}
-      />
-      <p className="note measure mt-unit">
-        For a later prize the chance is the tickets you still have in over all that are then still in. It stands beside
-        each winner.
-      </p>
     </Part>
   )
 }

@@ -10,7 +10,9 @@ import { countOf, formatMoney, formatNumber } from '#src/ui/format-number.ts'
 import { Part } from '#src/ui/page.tsx'
 import { Empty } from '#src/ui/states.tsx'
 import { useKeepDraw } from '../api/queries.ts'
+import { OddsPart } from '../odds/odds-part.tsx'
 import { moneyText, parseMoney } from '../money.ts'
+import { useRole } from '../use-role.ts'
 import { PrizeFields, type PrizeDraft } from './prize-fields.tsx'
 import { useDraw } from './use-draw.ts'
 
@@ -19,7 +21,14 @@ export function Component() {
   return (
     <>
       <Head title={`Prizes: ${draw.title}`} description="The prizes, in the order in which they are drawn." />
-      {draw.may.edit ? <Editor draw={draw} /> : <Reader draw={draw} />}
+      {draw.may.edit ? (
+        <Editor draw={draw} />
+      ) : (
+        <>
+          <Reader draw={draw} />
+          <Odds draw={draw} />
+        </>
+      )}
     </>
   )
 }
@@ -103,67 +112,77 @@ function Editor({ draw }: { readonly draw: OfficeDraw }) {
   }
   const items = drafts.reduce((sum, draft) => sum + (Number(draft.quantity) || 0), 0)
   return (
-    <Part title="Prizes" note="In the order in which they are drawn: the first prize first.">
-      <form
-        className="form"
-        method="post"
-        noValidate
-        onSubmit={(event) => {
-          event.preventDefault()
-          setSaved(false)
-          form.submit({ params: { draw: draw.id }, body: { version, prizes: prizesFrom(drafts, currency) } })
-        }}
-      >
-        {form.failed ? (
-          <ErrorSummary
-            title={form.status === 409 ? 'Somebody else has changed this draw' : undefined}
-            detail={
-              form.status === 409
-                ? `${form.detail ?? ''} Your prizes still stand below: load the page again to see theirs.`
-                : form.detail
-            }
-            errors={faults}
-          />
-        ) : null}
-        <ol className="prize-rows">
-          {drafts.map((draft, index) => (
-            <li key={draft.key}>
-              <PrizeFields
-                draft={draft}
-                index={index}
-                count={drafts.length}
-                currency={currency}
-                faultOf={(field) => faults.find((fault) => fault.field === field)?.message}
-                onChange={(next) => change(drafts.map((other) => (other.key === draft.key ? next : other)))}
-                onMove={(to) => move(index, to)}
-                onRemove={() => {
-                  change(drafts.filter((other) => other.key !== draft.key))
-                  setSaid(`${draft.name || 'The prize'} is taken out.`)
-                }}
-              />
-            </li>
-          ))}
-        </ol>
-        {drafts.length === 0 ? <p>A draw needs at least one prize.</p> : null}
-        <p className="buttons">
-          <Button
-            quiet
-            onClick={() => {
-              change([...drafts, emptyDraft(`new ${made.current}`)])
-              made.current += 1
-            }}
-          >
-            Add a prize
-          </Button>
-          <Button type="submit" busy={form.busy}>
-            Save the prizes
-          </Button>
-          <span role="status">{saved && !form.failed ? `Saved: ${countOf(items, 'item')} to be won.` : ''}</span>
-        </p>
-      </form>
-      <Announcer words={said} />
-    </Part>
+    <>
+      <Part title="Prizes" note="In the order in which they are drawn: the first prize first.">
+        <form
+          className="form"
+          method="post"
+          noValidate
+          onSubmit={(event) => {
+            event.preventDefault()
+            setSaved(false)
+            form.submit({ params: { draw: draw.id }, body: { version, prizes: prizesFrom(drafts, currency) } })
+          }}
+        >
+          {form.failed ? (
+            <ErrorSummary
+              title={form.status === 409 ? 'Somebody else has changed this draw' : undefined}
+              detail={
+                form.status === 409
+                  ? `${form.detail ?? ''} Your prizes still stand below: load the page again to see theirs.`
+                  : form.detail
+              }
+              errors={faults}
+            />
+          ) : null}
+          <ol className="prize-rows">
+            {drafts.map((draft, index) => (
+              <li key={draft.key}>
+                <PrizeFields
+                  draft={draft}
+                  index={index}
+                  count={drafts.length}
+                  currency={currency}
+                  faultOf={(field) => faults.find((fault) => fault.field === field)?.message}
+                  onChange={(next) => change(drafts.map((other) => (other.key === draft.key ? next : other)))}
+                  onMove={(to) => move(index, to)}
+                  onRemove={() => {
+                    change(drafts.filter((other) => other.key !== draft.key))
+                    setSaid(`${draft.name || 'The prize'} is taken out.`)
+                  }}
+                />
+              </li>
+            ))}
+          </ol>
+          {drafts.length === 0 ? <p>A draw needs at least one prize.</p> : null}
+          <p className="buttons">
+            <Button
+              quiet
+              onClick={() => {
+                change([...drafts, emptyDraft(`new ${made.current}`)])
+                made.current += 1
+              }}
+            >
+              Add a prize
+            </Button>
+            <Button type="submit" busy={form.busy}>
+              Save the prizes
+            </Button>
+            <span role="status">{saved && !form.failed ? `Saved: ${countOf(items, 'item')} to be won.` : ''}</span>
+          </p>
+        </form>
+        <Announcer words={said} />
+      </Part>
+      <Odds draw={draw} prizes={items} />
+    </>
   )
+}
+
+/** Who may not read the entrants is not told how their tickets are spread. */
+function Odds({ draw, prizes }: { readonly draw: OfficeDraw; readonly prizes?: number }) {
+  const role = useRole()
+  if (role !== 'promoter' && role !== 'organiser') return null
+  return <OddsPart drawId={draw.id} entrants={draw.counts.entrants} {...(prizes === undefined ? {} : { prizes })} />
 }
 
 type PrizeRow = OfficeDraw['prizes'][number]

@@ -17,6 +17,7 @@ import { Link } from '#src/ui/link.tsx'
 import { Facts, Part } from '#src/ui/page.tsx'
 import { Failure, Skeleton } from '#src/ui/states.tsx'
 import { sealSummaryQuery, useKeepDraw } from '../api/queries.ts'
+import { OddsPart } from '../odds/odds-part.tsx'
 import { useRole } from '../use-role.ts'
 import { RULE_WORDS } from './draw-fields.tsx'
 import { isBeingSealed } from './sealing.ts'
@@ -103,6 +104,7 @@ function Prepare({ draw, summary }: { readonly draw: OfficeDraw; readonly summar
           />
         </div>
       </Part>
+      <OddsPart drawId={draw.id} entrants={summary.entrants} />
       <Part title="Before you seal">
         {summary.problems.length > 0 ? (
           <>
