@@ -11,7 +11,6 @@ import { readCheckFiles } from '#server/adapters/archive/check-files.ts'
 import { createSha256 } from '#server/adapters/archive/check-tools.ts'
 import { deflateWithZlib } from '#server/adapters/archive/zlib-codec.ts'
 import { sourceOfFile } from '#server/adapters/object-store/put-source.ts'
-import type { SigningKey } from '#server/adapters/signing/signing-keys.ts'
 import { putCheckpoint } from '#server/commands/put-checkpoint.ts'
 import type { Services } from '#server/services.ts'
 import { signedHead } from '#server/store/queries/log-head.ts'
@@ -98,15 +97,15 @@ async function contentsOf(
     'transcript.jsonl': () => transcriptOf(services.db, drawId),
     'site-key.pem': utf8(key.publicKeyPem),
     ...(await readCheckFiles()),
-    ...(await logMembers(services, drawId, settled.result.digest, key)),
+    ...(await logMembers(services, drawId, settled.result.digest)),
   }
 }
 
 /**
  * The head of the log and what it says of the draw. The head is the oldest one kept with the result's entry, so that a
- * second run makes the same members; it is signed with the key of the seal, which may be retired by now.
+ * second run makes the same members; it is signed with all keys, so with that of the seal, which may be retired by now.
  */
-async function logMembers(services: Services, drawId: string, resultDigest: string, key: SigningKey) {
+async function logMembers(services: Services, drawId: string, resultDigest: string) {
   const { db, sha256 } = services
   const [drawn] = await db
     .select({ index: logEvent.index })
@@ -116,7 +115,7 @@ async function logMembers(services: Services, drawId: string, resultDigest: stri
   if ((await storedCheckpoint(db, drawn.index)) === null) await putCheckpoint(services)
   const kept = await storedCheckpoint(db, drawn.index)
   if (!kept) throw new Error('There is no checkpoint with the result of this draw.')
-  const { note } = await signedHead(db, services, { size: kept.size, key })
+  const { note } = await signedHead(db, services, { size: kept.size })
   const entries = await provenEntriesOf(db, sha256, drawId, kept.size)
   return { 'checkpoint.txt': utf8(note), 'log-proof.json': logProofBytes(entries) }
 }

@@ -48,15 +48,17 @@ export function checkpointText({ origin, size, root }: Checkpoint): string {
   return `${origin}\n${size}\n${toBase64(root)}\n`
 }
 
-/** Signs a checkpoint; `sign` gives 64 bytes of Ed25519. The same checkpoint gives the same note. */
+/** Signs a checkpoint with each key; `sign` gives 64 bytes of Ed25519. The same checkpoint and keys give the same note. */
 export function signCheckpoint(
   sha256: Sha256,
   checkpoint: Checkpoint,
-  key: { readonly publicKey: Uint8Array; sign(message: Uint8Array): Uint8Array },
+  ...keys: readonly { readonly publicKey: Uint8Array; sign(message: Uint8Array): Uint8Array }[]
 ): string {
   const text = checkpointText(checkpoint)
-  const signer = logKey(sha256, checkpoint.origin, key.publicKey)
-  return formatNote({ text, signatures: [signNoteText(text, signer, (message) => key.sign(message))] })
+  const signatures = keys.map((key) =>
+    signNoteText(text, logKey(sha256, checkpoint.origin, key.publicKey), (message) => key.sign(message)),
+  )
+  return formatNote({ text, signatures })
 }
 
 /**

@@ -1,12 +1,13 @@
 import { parseArgs } from 'node:util'
 
-export const CHECK_USAGE = `Usage: npm run check -- [--test-beacon] [--key FINGERPRINT] proof.zip [receipt.json …]
-       npm run check -- [--test-beacon] [--key FINGERPRINT] --url DRAW_PAGE [receipt.json …]
+export const CHECK_USAGE = `Usage: npm run check -- [options] proof.zip [receipt.json …]
+       npm run check -- [options] --url DRAW_PAGE [receipt.json …]
 
   proof.zip           a proof archive, or a folder into which one was unpacked
   receipt.json …      receipts or short proofs to check against it
   --url DRAW_PAGE     fetches the archive of a draw's page first, as in https://site.example/draws/spring-fair
   --key FINGERPRINT   all 64 hexadecimal digits of the site's key, from its pages, posters or tickets
+  --remember FILE     keeps the last checkpoint of the site's log in a file; with --url, proves that the log only grew
   --test-beacon       lets the development chain pass, for tests and rehearsals`
 
 /** The command was used in a way that it does not understand; the message is a whole sentence. */
@@ -17,13 +18,19 @@ export interface CheckArguments {
   readonly receipts: readonly string[]
   readonly expectedKey: string | undefined
   readonly testBeacon: boolean
+  /** Where the last checkpoint of the log is kept. */
+  readonly remember: string | undefined
 }
 
 /** Reads the command line of `npm run check`. Throws UsageError. */
 export function readCheckArguments(args: readonly string[]): CheckArguments {
   const { values, positionals } = parse(args)
   const receipts = [...positionals]
-  const common = { expectedKey: readFingerprint(values.key), testBeacon: values['test-beacon'] === true }
+  const common = {
+    expectedKey: readFingerprint(values.key),
+    testBeacon: values['test-beacon'] === true,
+    remember: values.remember,
+  }
   if (values.url !== undefined) return { archive: { kind: 'url', url: proofAddress(values.url) }, receipts, ...common }
   const path = receipts.shift()
   if (path === undefined) throw new UsageError('Say which proof archive to check, or give a draw page with --url.')
@@ -35,7 +42,12 @@ function parse(args: readonly string[]) {
     return parseArgs({
       args: [...args],
       allowPositionals: true,
-      options: { 'test-beacon': { type: 'boolean' }, key: { type: 'string' }, url: { type: 'string' } },
+      options: {
+        'test-beacon': { type: 'boolean' },
+        key: { type: 'string' },
+        remember: { type: 'string' },
+        url: { type: 'string' },
+      },
     })
   } catch (error) {
     throw new UsageError(error instanceof Error ? error.message : String(error))

@@ -7,6 +7,7 @@ import { openFolder } from '#server/adapters/archive/folder-source.ts'
 import { zlibReader } from '#server/adapters/archive/zlib-codec.ts'
 import { CHECK_USAGE, readCheckArguments, UsageError } from '#server/cli/check/arguments.ts'
 import { fetchArchive, FetchError, type FetchLimits } from '#server/cli/check/fetch-archive.ts'
+import { watchLog } from '#server/cli/check/watch-log.ts'
 import type { MembersSource } from '#shared/archive/members-source.ts'
 import { openZip } from '#shared/archive/zip-reader.ts'
 import { checkArchive, type CheckEvent, type CheckReport } from '#shared/protocol/check/check-archive.ts'
@@ -22,7 +23,7 @@ export interface Output {
 export async function runCheck(args: readonly string[], output: Output, limits?: FetchLimits): Promise<0 | 1 | 2> {
   let folder: string | null = null
   try {
-    const { archive, receipts, expectedKey, testBeacon } = readCheckArguments(args)
+    const { archive, receipts, expectedKey, testBeacon, remember } = readCheckArguments(args)
     const given = await readReceipts(receipts)
     let path: string
     if (archive.kind === 'url') {
@@ -37,7 +38,14 @@ export async function runCheck(args: readonly string[], output: Output, limits?:
       ...(expectedKey === undefined ? {} : { expectedKey }),
     })
     printReport(report, output)
-    return report.ok ? 0 : 1
+    if (!report.ok || remember === undefined) return report.ok ? 0 : 1
+    const { log, publicKey } = report
+    const site = archive.kind === 'url' ? archive.url.origin : null
+    const watched = await watchLog({ file: remember, site, archived: log, publicKey })
+    output.out('The log:')
+    for (const line of watched.lines) output.out(printable(`- ${line}`))
+    if (watched.alarm) output.out('FAILED: the log is not the one that was seen before. The arithmetic above holds all the same.')
+    return watched.alarm ? 1 : 0
   } catch (error) {
     if (error instanceof FetchError) {
       output.error(error.message)

@@ -62,7 +62,15 @@ export type CheckEvent =
 
 /** How a check ended. On success also the records it read, for whoever wants to show them. */
 export type CheckReport =
-  | { readonly ok: true; readonly verdict: CheckVerdict; readonly seal: Seal; readonly result: DrawResult }
+  | {
+      readonly ok: true
+      readonly verdict: CheckVerdict
+      readonly seal: Seal
+      readonly result: DrawResult
+      /** The raw key that signed both. */
+      readonly publicKey: Uint8Array
+      readonly log: CheckState['log']
+    }
   | { readonly ok: false; readonly failure: CheckFailure }
 
 export interface CheckInput {
@@ -107,5 +115,6 @@ export async function checkArchive(input: CheckInput): Promise<CheckReport> {
       return { ok: false, failure }
     }
   }
-  return { ok: true, verdict: verdictOf(state), seal: state.seal, result: state.result }
+  const { seal, result, publicKey, log } = state
+  return { ok: true, verdict: verdictOf(state), seal, result, publicKey, log }
 }

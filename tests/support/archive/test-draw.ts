@@ -70,6 +70,8 @@ export interface TestArchive {
   readonly members: readonly (readonly [name: string, bytes: Uint8Array])[]
   readonly receipt: Uint8Array
   readonly fingerprint: string
+  /** Signs all of it. */
+  readonly secretKey: Uint8Array
 }
 
 const DRAWN_AT = '2026-05-09T18:30:00Z'
@@ -247,7 +249,7 @@ export async function testArchive(base: Base, stages: Partial<Stages> = {}): Pro
     ...own.salts,
   })
   const receiptText = pass(stages.receiptText, canonicalText(pass(stages.receipt, structuredClone(receipt))))
-  return { members, receipt: utf8(receiptText), fingerprint: keyFingerprint(sha256, publicKey) }
+  return { members, receipt: utf8(receiptText), fingerprint: keyFingerprint(sha256, publicKey), secretKey }
 }
 
 /** What the site's log says of the draw, between entries of others, and its head. */
