@@ -5,7 +5,8 @@ import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { readCheckFiles } from '#server/adapters/archive/check-files.ts'
 import { checkPath } from '#server/cli/check/run-check.ts'
-import { BASES } from '#tests/support/archive/test-draw.ts'
+import { formatVkey } from '#shared/log/signed-note.ts'
+import { BASES, WITNESS } from '#tests/support/archive/test-draw.ts'
 import { type Mutation, mutationFile } from '#tests/support/tampering/mutation.ts'
 import { tamper } from '#tests/support/tampering/tamper.ts'
 
@@ -27,17 +28,30 @@ afterAll(() => rmSync(folder, { recursive: true }))
 
 type Refusal = { step: number; code?: string; where: string } | null
 
-async function byShared(zip: string, receipts: readonly string[], { key, withoutTestBeacon }: Partial<Mutation>) {
+async function byShared(
+  zip: string,
+  receipts: readonly string[],
+  { key, withoutTestBeacon, giveWitness }: Partial<Mutation>,
+) {
   const report = await checkPath(zip, () => {}, {
     allowDevelopmentChain: withoutTestBeacon !== true,
     receipts: receipts.map((name) => ({ name: 'receipt.json', bytes: new Uint8Array(readFileSync(name)) })),
     ...(key === undefined ? {} : { expectedKey: key }),
+    ...(giveWitness ? { witnesses: [WITNESS] } : {}),
   })
   return report.ok ? null : report.failure
 }
 
-function byShipped(zip: string, receipts: readonly string[], { key, withoutTestBeacon }: Partial<Mutation>) {
-  const flags = [...(withoutTestBeacon ? [] : ['--test-beacon']), ...(key === undefined ? [] : ['--key', key])]
+function byShipped(
+  zip: string,
+  receipts: readonly string[],
+  { key, withoutTestBeacon, giveWitness }: Partial<Mutation>,
+) {
+  const flags = [
+    ...(giveWitness ? ['--witness', formatVkey(WITNESS)] : []),
+    ...(withoutTestBeacon ? [] : ['--test-beacon']),
+    ...(key === undefined ? [] : ['--key', key]),
+  ]
   return new Promise<{ status: number; refusal: Refusal }>((resolve, reject) => {
     const args = [join(folder, 'check.mjs'), '--json', ...flags, zip, ...receipts]
     execFile(process.execPath, args, (error, stdout, stderr) => {
@@ -76,7 +90,7 @@ describe('an archive that nobody touched passes both checks', () => {
   })
 
   it('without the log, as archives from before it are', async () => {
-    const change = { withoutLog: ['checkpoint.txt' as const, 'log-proof.json' as const] }
+    const change = { without: ['checkpoint.txt', 'log-proof.json', 'witnessed.txt', 'witnessed-proof.json'] }
     const [zip] = await write('before-the-log', { base: 'beacon', change })
     expect(await byShared(zip, [], {})).toBeNull()
     expect(await byShipped(zip, [], {})).toEqual({ status: 0, refusal: null })

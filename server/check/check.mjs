@@ -1,7 +1,8 @@
 #!/usr/bin/env node
 // The check that lies in every proof archive of a draw in the format evenpenny/1.
 //
-//     node check.mjs [--key FINGERPRINT] [--test-beacon] [--json] [archive or folder] [receipt.json …]
+//     node check.mjs [--key FINGERPRINT] [--tsa FILE.pem] [--witness KEY] [--test-beacon] [--test-timestamps] [--json]
+//                    [archive or folder] [receipt.json …]
 //
 // It needs Node 20 or later and, beside it, bls12-381.mjs (a published library, bundled: the beacon's signature cannot be
 // checked with what Node brings). It opens no connection and writes no file. Section numbers are those of the format's
@@ -58,6 +59,8 @@ const REQUIRED = [
 ].concat(['terms.txt', 'site-key.pem', 'CHECKING.txt', 'check.mjs', 'bls12-381.mjs'])
 // Members that came later: archives from before have neither, and one alone fails.
 const LOG_MEMBERS = ['checkpoint.txt', 'log-proof.json']
+const WITNESSED = ['witnessed.txt', 'witnessed-proof.json']
+const OTHER_LATER = ['seal.tsr', 'replaced.json']
 
 // ---- Failing --------------------------------------------------------------------------------------------------------
 
@@ -585,7 +588,8 @@ function checkArchive(c) {
     if (toHex(sha256(bytes)) !== sums.get(name))
       fail(`the member ${name}`, `its bytes do not have the digest in ${SUMS}.`)
   }
-  c.later = [...c.files.keys()].filter((name) => ![SUMS, ...REQUIRED, ...LOG_MEMBERS].includes(name))
+  const known = [SUMS, ...REQUIRED, ...LOG_MEMBERS, ...WITNESSED, ...OTHER_LATER]
+  c.later = [...c.files.keys()].filter((name) => !known.includes(name) && !REPLACED.test(name))
   return `${c.files.size} members, each with its digest.`
 }
 
@@ -626,8 +630,23 @@ function memberOf(bytes, name) {
 /** Step 3: the seal (section 3). */
 function checkSeal(c) {
   const bytes = c.files.get('seal.json')
-  const seal = parseCanonical(utf8(bytes, 'seal.json'), 'seal.json')
-  const at = (name) => `seal.json ${name}`
+  const seal = readSeal(c, bytes, 'seal.json')
+  const terms = c.files.get('terms.txt')
+  if (toHex(sha256(terms)) !== seal.terms) fail('terms.txt', 'its digest is not the one in the seal.')
+  const words = utf8(terms, 'terms.txt')
+  if (!words.endsWith('\n') || words.endsWith('\n\n')) fail('terms.txt', 'it does not end with exactly one line feed.')
+  noForbidden(words.replaceAll('\n', ''), 'terms.txt')
+  c.seal = seal
+  c.drawAt = time(seal.drawAt, 'seal.json drawAt')
+  c.sealDigest = toHex(sha256(bytes))
+  const picks = seal.prizes.reduce((sum, { quantity }) => sum + quantity, seal.reserves)
+  return `seal ${c.sealDigest} of the draw ${JSON.stringify(seal.draw)}, ${JSON.stringify(seal.title)}; rule ${seal.rule}, ${picks} picks at most.`
+}
+
+/** The record of a seal: exactly its members, and every rule of section 3 that needs nothing else. */
+function readSeal(c, bytes, file) {
+  const seal = parseCanonical(utf8(bytes, file), file)
+  const at = (name) => `${file} ${name}`
   const names = [
     'format',
     'kind',
@@ -642,7 +661,7 @@ function checkSeal(c) {
     'entries',
     'prizes',
   ]
-  members(seal, [...names, 'reserves', 'rule', 'sources', 'supersedes', 'reason'], 'seal.json')
+  members(seal, [...names, 'reserves', 'rule', 'sources', 'supersedes', 'reason'], file)
   one(seal.format, ['evenpenny/1'], at('format'))
   one(seal.kind, ['seal'], at('kind'))
   text(seal.draw, at('draw'))
@@ -652,11 +671,11 @@ function checkSeal(c) {
   text(seal.title, at('title'))
   hex(seal.key, 32, at('key')) // step 2 has compared it with site-key.pem
 
-  c.drawAt = time(seal.drawAt, at('drawAt'))
-  if (c.drawAt - time(seal.sealedAt, at('sealedAt')) < 120)
+  const drawAt = time(seal.drawAt, at('drawAt'))
+  if (drawAt - time(seal.sealedAt, at('sealedAt')) < 120)
     fail(at('drawAt'), 'it is less than 120 seconds after sealedAt.')
   if (seal.revealBy !== null) {
-    const after = time(seal.revealBy, at('revealBy')) - c.drawAt
+    const after = time(seal.revealBy, at('revealBy')) - drawAt
     if (after < 0 || after > 24 * 3600) fail(at('revealBy'), 'it is not within the 24 hours after drawAt.')
   }
 
@@ -679,7 +698,7 @@ function checkSeal(c) {
   })
   if (picks > MAX_PICKS) fail(at('prizes'), `there are ${picks} picks, more than the limit of ${MAX_PICKS}.`)
   one(seal.rule, ['one-prize-each', 'every-ticket'], at('rule'))
-  checkSources(c, seal, at)
+  checkSources(c, seal, at, drawAt)
 
   if ((seal.supersedes === null) !== (seal.reason === null))
     fail(at('reason'), 'supersedes and reason are not both set or both null.')
@@ -687,21 +706,12 @@ function checkSeal(c) {
     hex(seal.supersedes, 32, at('supersedes'))
     text(seal.reason, at('reason'))
   }
-
-  const terms = c.files.get('terms.txt')
-  if (toHex(sha256(terms)) !== hex(seal.terms, 32, at('terms')))
-    fail('terms.txt', 'its digest is not the one in the seal.')
-  const words = utf8(terms, 'terms.txt')
-  if (!words.endsWith('\n') || words.endsWith('\n\n')) fail('terms.txt', 'it does not end with exactly one line feed.')
-  noForbidden(words.replaceAll('\n', ''), 'terms.txt')
-
-  c.seal = seal
-  c.sealDigest = toHex(sha256(bytes))
-  return `seal ${c.sealDigest} of the draw ${JSON.stringify(seal.draw)}, ${JSON.stringify(seal.title)}; rule ${seal.rule}, ${picks} picks at most.`
+  hex(seal.terms, 32, at('terms'))
+  return seal
 }
 
 /** Section 3, `sources`. */
-function checkSources(c, seal, at) {
+function checkSources(c, seal, at, drawAt) {
   const sources = members(seal.sources, ['beacon', 'flips', 'seedCommit', 'tosses'], at('sources'))
   one(sources.flips, ['derived', 'tossed'], at('sources.flips'))
   const derived = sources.flips === 'derived'
@@ -739,9 +749,9 @@ function checkSources(c, seal, at) {
       fail(`${where}.${name}`, "it is not that of the pinned network, drand's quicknet.")
   }
   one(beacon.scheme, [SCHEME], `${where}.scheme`)
-  c.development = network === DEVELOPMENT_CHAIN
+  c.development ||= network === DEVELOPMENT_CHAIN
   // The first round, 1 at least, whose time genesisTime + (N − 1)·period is at or after drawAt.
-  const round = Math.max(1, Math.ceil((c.drawAt - network.genesisTime) / network.period) + 1)
+  const round = Math.max(1, Math.ceil((drawAt - network.genesisTime) / network.period) + 1)
   if (beacon.round !== round) fail(`${where}.round`, `it is not ${round}, the first round at or after drawAt.`)
 }
 
@@ -1018,8 +1028,10 @@ function checkTranscript(c) {
 function checkReceipts(c) {
   const found = c.receipts.map((path) => checkReceipt(c, readFileSync(path), basename(path)))
   if (found.length === 0) found.push('no receipt was given.')
-  const log = checkLog(c)
-  if (log) found.push(log)
+  for (const check of [checkLog, checkTimestamp, checkWitnessed, checkReplaced]) {
+    const told = check(c)
+    if (told) found.push(told)
+  }
   if (c.later.length) found.push(`Not examined: ${c.later.join(', ')}.`)
   if (c.strays.length)
     found.push(`In the folder, but no part of the archive, and not examined: ${c.strays.join(', ')}.`)
@@ -1121,10 +1133,10 @@ function readNote(bytes, where) {
   return { text: note.slice(0, split + 1), signatures }
 }
 
-/** checkpoint.txt: three lines, signed under the log's name by the key that signed the seal. */
-function readCheckpoint(c) {
-  const where = 'checkpoint.txt'
-  const { text: body, signatures } = readNote(c.files.get(where), where)
+/** A checkpoint: three lines, signed under the log's name by the key that signed the seal. */
+function readCheckpoint(c, where) {
+  const note = readNote(c.files.get(where), where)
+  const { text: body, signatures } = note
   const lines = /^([^\n]+)\n(0|[1-9][0-9]{0,15})\n([A-Za-z0-9+/=]{44})\n$/.exec(body)
   if (!lines) fail(where, 'a checkpoint is three lines: the name of the log, its size, its root.')
   const [, origin, size, encoded] = lines
@@ -1140,7 +1152,7 @@ function readCheckpoint(c) {
       fail(where, 'the signature of the key that signed the seal is not good.')
     }
   }
-  return { origin, size: Number(size), root }
+  return { origin, size: Number(size), root, note }
 }
 
 /** A leaf of the log: its data are these very bytes. */
@@ -1158,19 +1170,13 @@ function readLogLeaf(data, where) {
   return leaf
 }
 
-/** What the log says of the draw: its opening came first, then this seal, then this result, and no seal between the two. */
-function checkLog(c) {
-  const present = LOG_MEMBERS.filter((name) => c.files.has(name))
-  if (present.length === 0) return ''
-  for (const name of LOG_MEMBERS)
-    if (!c.files.has(name)) fail(`the member ${name}`, `it is missing, and ${present[0]} is there.`)
-  const head = readCheckpoint(c)
-  const where = 'log-proof.json'
+/** Entries of the log with their paths, in ascending order. */
+function readLogProof(c, where) {
   const proof = members(parseCanonical(utf8(c.files.get(where), where), where), ['entries', 'format', 'kind'], where)
   one(proof.format, ['evenpenny/1'], `${where} format`)
   one(proof.kind, ['log-proof'], `${where} kind`)
   let before = -1
-  const entries = list(proof.entries, `${where} entries`).map((entry, k) => {
+  return list(proof.entries, `${where} entries`).map((entry, k) => {
     const at = `${where} entries[${k}]`
     members(entry, ['index', 'leaf', 'path'], at)
     if (count(entry.index, 0, MAX_COUNT - 1, `${at}.index`) <= before) fail(`${at}.index`, 'it is not in its order.')
@@ -1179,16 +1185,32 @@ function checkLog(c) {
     list(entry.path, `${at}.path`).forEach((sibling, j) => hex(sibling, 32, `${at}.path[${j}]`))
     return { ...leaf, index: entry.index, path: entry.path, data: entry.leaf, where: at }
   })
+}
+
+/** An entry's path must lead to the root of a checkpoint, with the sides that the entry's number has. */
+function leadsTo(entry, head, name) {
+  const sides = entry.index < head.size ? sidesOf(entry.index, head.size) : null
+  if (!sides || sides.length !== entry.path.length)
+    fail(`${entry.where}.path`, `entry ${entry.index} of ${head.size} does not have such a path.`)
+  const top = entry.path.reduce(
+    (below, sibling, j) =>
+      sides[j] === 'L' ? sha256(byte(1), fromHex(sibling), below) : sha256(byte(1), below, fromHex(sibling)),
+    sha256(byte(0), Buffer.from(entry.data, 'utf8')),
+  )
+  if (!top.equals(head.root)) fail(`${entry.where}.path`, `it does not lead to the root in ${name}.`)
+}
+
+/** What the log says of the draw: its opening came first, then this seal, then this result, and no seal between the two. */
+function checkLog(c) {
+  const present = LOG_MEMBERS.filter((name) => c.files.has(name))
+  if (present.length === 0) return ''
+  for (const name of LOG_MEMBERS)
+    if (!c.files.has(name)) fail(`the member ${name}`, `it is missing, and ${present[0]} is there.`)
+  const head = readCheckpoint(c, 'checkpoint.txt')
+  const where = 'log-proof.json'
+  const entries = readLogProof(c, where)
   for (const entry of entries) {
-    const sides = entry.index < head.size ? sidesOf(entry.index, head.size) : null
-    if (!sides || sides.length !== entry.path.length)
-      fail(`${entry.where}.path`, `entry ${entry.index} of ${head.size} does not have such a path.`)
-    const top = entry.path.reduce(
-      (below, sibling, j) =>
-        sides[j] === 'L' ? sha256(byte(1), fromHex(sibling), below) : sha256(byte(1), below, fromHex(sibling)),
-      sha256(byte(0), Buffer.from(entry.data, 'utf8')),
-    )
-    if (!top.equals(head.root)) fail(`${entry.where}.path`, 'it does not lead to the root in checkpoint.txt.')
+    leadsTo(entry, head, 'checkpoint.txt')
     if (entry.draw !== c.seal.draw) fail(`${entry.where}.leaf draw`, 'the entry is about another draw.')
   }
   if (entries[0]?.event !== 'opened') fail(`${where} entries`, 'the log does not open the draw before everything else.')
@@ -1207,6 +1229,541 @@ function checkLog(c) {
     fail(`${where} entries`, 'the log names another seal between this one and the result.')
   c.log = { ...head, root: toHex(head.root) }
   return `The log ${head.origin}, ${head.size} entries, holds ${entries.length} of this draw; entry ${sealed.index} is this seal.`
+}
+
+// ---- Timestamps (RFC 3161) ------------------------------------------------------------------------------------------
+//
+// seal.tsr is an authority's answer: a status, and signed data (CMS, RFC 5652) over a small record with the digest of seal.json and a
+// time. Its bytes are DER (X.690): a tag, a length, a content, and contents inside. Node verifies signatures and certificates'
+// keys; what a certificate is for is read here, since a timestamp counts only under one that is for timestamps alone.
+
+const SEQUENCE = 0x30
+const OIDS = {
+  signedData: '1.2.840.113549.1.7.2',
+  tstInfo: '1.2.840.113549.1.9.16.1.4',
+  contentType: '1.2.840.113549.1.9.3',
+  messageDigest: '1.2.840.113549.1.9.4',
+  signingCertificate: '1.2.840.113549.1.9.16.2.12',
+  signingCertificateV2: '1.2.840.113549.1.9.16.2.47',
+  timeStamping: '1.3.6.1.5.5.7.3.8',
+}
+const DIGESTS = {
+  '1.3.14.3.2.26': 'sha1',
+  '2.16.840.1.101.3.4.2.1': 'sha256',
+  '2.16.840.1.101.3.4.2.2': 'sha384',
+  '2.16.840.1.101.3.4.2.3': 'sha512',
+}
+// Algorithm of a signature → kind of key, and the digest where the algorithm names one.
+const SIGNATURES = {
+  '1.2.840.113549.1.1.1': ['rsa', null],
+  '1.2.840.113549.1.1.11': ['rsa', 'sha256'],
+  '1.2.840.113549.1.1.12': ['rsa', 'sha384'],
+  '1.2.840.113549.1.1.13': ['rsa', 'sha512'],
+  '1.2.840.10045.4.3.2': ['ec', 'sha256'],
+  '1.2.840.10045.4.3.3': ['ec', 'sha384'],
+  '1.2.840.10045.4.3.4': ['ec', 'sha512'],
+  '1.3.101.112': ['ed25519', null],
+}
+// The development authority's key is public: anybody can make its timestamps. It passes only with --test-timestamps.
+const DEVELOPMENT_AUTHORITY = `-----BEGIN CERTIFICATE-----
+MIIBzTCCAXSgAwIBAgIBATAKBggqhkjOPQQDAjBMMR4wHAYDVQQKDBVFdmVucGVu
+bnkgZGV2ZWxvcG1lbnQxKjAoBgNVBAMMIURldmVsb3BtZW50IGF1dGhvcml0eSAt
+IHdvcnRobGVzczAgFw0yMDAxMDEwMDAwMDBaGA8yMDk5MTIzMTIzNTk1OVowTDEe
+MBwGA1UECgwVRXZlbnBlbm55IGRldmVsb3BtZW50MSowKAYDVQQDDCFEZXZlbG9w
+bWVudCBhdXRob3JpdHkgLSB3b3J0aGxlc3MwWTATBgcqhkjOPQIBBggqhkjOPQMB
+BwNCAARY5xHbALEHxv7Rx8tj52SutRGry4wEWUoLF4MhucVLQE3CDJio6Q8g7eZ+
+8G2/K7dLcZjJQIf6cYtF1cr0AiYvo0UwQzASBgNVHRMBAf8ECDAGAQH/AgEAMA4G
+A1UdDwEB/wQEAwICBDAdBgNVHQ4EFgQUpWVNnG9pzA4yoX8CzfFzTwwptTkwCgYI
+KoZIzj0EAwIDRwAwRAIgaHdfIlGzp9qpbkFSTmbSoQcVVDjwef+ZlMjG3zYHVXIC
+IAjWzdaixA9RT6axvJ3euGL5V8tqH90aLfflAYEl+H99
+-----END CERTIFICATE-----`
+const DEVELOPMENT_SIGNER_KEY = 'cd76ca6942dee894374808b1bc3805a5a794e3a9dfb8a4017c68b0d6cda12344' // SHA-256 of the key that signs under it
+
+/** The element at `at`: tag, all its bytes, its content. Lengths are definite, and written as shortly as they can be. */
+function derAt(bytes, at, where) {
+  const broken = () => fail(where, 'its DER is not well formed.')
+  if (at + 2 > bytes.length || (bytes[at] & 31) === 31) broken()
+  let start = at + 2
+  let length = bytes[at + 1]
+  if (length >= 128) {
+    const octets = length & 127
+    if (octets < 1 || octets > 4 || start + octets > bytes.length) broken()
+    length = bytes.readUIntBE(start, octets)
+    if (length < 128 || length < 256 ** (octets - 1)) broken()
+    start += octets
+  }
+  if (start + length > bytes.length) broken()
+  return { tag: bytes[at], all: bytes.subarray(at, start + length), content: bytes.subarray(start, start + length) }
+}
+
+/** Bytes that are exactly one element of a tag. */
+function derOf(bytes, tag, where) {
+  const element = derAt(bytes, 0, where)
+  if (element.tag !== tag || element.all.length !== bytes.length) fail(where, 'its DER is not what belongs here.')
+  return element
+}
+
+function derInside(element, where) {
+  const inside = []
+  for (let at = 0; at < element.content.length; at += inside.at(-1).all.length) {
+    if (inside.length > 1000) fail(where, 'it has too many elements.')
+    inside.push(derAt(element.content, at, where))
+  }
+  return inside
+}
+
+/** Goes through a sequence: `take` wants an element, of this tag where one is given; `maybe` takes one only if it is there. */
+function derFields(element, where, tag = SEQUENCE) {
+  if (element.tag !== tag) fail(where, 'its DER is not what belongs here.')
+  const inside = derInside(element, where)
+  const maybe = (wanted) => (inside[0]?.tag === wanted ? inside.shift() : null)
+  const take = (wanted = inside[0]?.tag) => maybe(wanted) ?? fail(where, 'an element of its DER is missing.')
+  const end = () => inside.length === 0 || fail(where, 'there is an element too many in its DER.')
+  return { take, maybe, end }
+}
+
+function oidOf(element, where) {
+  if (element.tag !== 6 || element.content.length === 0 || element.content.length > 64)
+    fail(where, 'an identifier is wrong.')
+  const arcs = []
+  let arc = 0
+  for (const octet of element.content) {
+    arc = arc * 128 + (octet & 127)
+    if (octet < 128) {
+      arcs.push(arc)
+      arc = 0
+    }
+  }
+  const top = Math.min(2, Math.floor(arcs[0] / 40))
+  return [top, arcs[0] - 40 * top, ...arcs.slice(1)].join('.')
+}
+
+/** The bytes of a whole number; an algorithm's identifier; a small number; a truth value. */
+const integerOf = (element, where) =>
+  element.tag === 2 && element.content.length > 0 ? element.content : fail(where, 'a whole number is expected.')
+const algorithmOf = (element, where) => oidOf(derFields(element, where).take(), where)
+const truthOf = (element, where) =>
+  element.content.length === 1 && [0, 255].includes(element.content[0])
+    ? element.content[0] === 255
+    : fail(where, 'a truth value is wrong.')
+function smallOf(element, where) {
+  const bytes = integerOf({ ...element, tag: 2 }, where)
+  if (bytes.length > 6 || bytes[0] >= 128) fail(where, 'a number is too large, or below 0.')
+  return bytes.readUIntBE(0, bytes.length)
+}
+
+/** Seconds since 1970 of an ASN.1 time in UTC, with what stands behind the point apart. */
+function asn1Time(element, where) {
+  const written = element.content.toString('latin1')
+  const form =
+    element.tag === 0x18
+      ? /^(\d{4})(\d\d)(\d\d)(\d\d)(\d\d)(\d\d)(\.\d{0,8}[1-9])?Z$/
+      : element.tag === 0x17
+        ? /^(\d\d)(\d\d)(\d\d)(\d\d)(\d\d)(\d\d)Z$/
+        : null
+  const parts = form?.exec(written)
+  if (!parts) fail(where, 'a time is not one in UTC.')
+  const [, year, month, day, hour, minute, second, fraction] = parts
+  const full = year.length === 4 ? year : `${Number(year) < 50 ? 20 : 19}${year}`
+  return {
+    seconds: time(`${full}-${month}-${day}T${hour}:${minute}:${second}Z`, where),
+    fraction: Number(`0${fraction ?? ''}`),
+  }
+}
+
+/** A certificate: Node's view of it, and what Node does not tell. */
+function readCertificate(bytes, where) {
+  if (bytes.length > 16 * 1024) fail(where, 'a certificate is too long.')
+  const outer = derFields(derOf(bytes, SEQUENCE, where), where)
+  const body = outer.take(SEQUENCE)
+  const algorithm = outer.take(SEQUENCE)
+  const bits = outer.take(3)
+  outer.end()
+  const fields = derFields(body, where)
+  fields.maybe(0xa0)
+  const serial = integerOf(fields.take(), where)
+  if (!fields.take(SEQUENCE).all.equals(algorithm.all)) fail(where, 'a certificate names two algorithms.')
+  const issuer = fields.take(SEQUENCE).all
+  const validity = derFields(fields.take(SEQUENCE), where)
+  const from = asn1Time(validity.take(), where).seconds
+  const until = asn1Time(validity.take(), where).seconds
+  const subject = fields.take(SEQUENCE)
+  const spki = fields.take(SEQUENCE).all
+  fields.maybe(0x81)
+  fields.maybe(0x82)
+  const wrapped = fields.maybe(0xa3)
+  fields.end()
+  const c = {
+    bytes,
+    serial,
+    issuer,
+    subject: subject.all,
+    from,
+    until,
+    spki,
+    body: body.all,
+    ca: false,
+    below: Infinity,
+    unknown: false,
+  }
+  c.algorithm = algorithmOf(algorithm, where)
+  c.signature = bits.content.subarray(1)
+  const names = new Map()
+  for (const set of derInside(subject, where)) {
+    for (const pair of derInside(set, where)) {
+      const part = derFields(pair, where)
+      const oid = oidOf(part.take(6), where)
+      if (!names.has(oid)) names.set(oid, part.take().content.toString('utf8'))
+    }
+  }
+  c.name = names.get('2.5.4.3') ?? names.get('2.5.4.10') ?? ''
+  const seen = new Set()
+  for (const extension of wrapped ? derInside(derOf(wrapped.content, SEQUENCE, where), where) : []) {
+    const part = derFields(extension, where)
+    const oid = oidOf(part.take(6), where)
+    const flag = part.maybe(1)
+    const critical = flag !== null && truthOf(flag, where)
+    const value = part.take(4).content
+    if (seen.has(oid)) fail(where, 'a certificate has an extension twice.')
+    seen.add(oid)
+    if (oid === '2.5.29.19') {
+      const limits = derFields(derOf(value, SEQUENCE, where), where)
+      const is = limits.maybe(1)
+      c.ca = is !== null && truthOf(is, where)
+      const most = limits.maybe(2)
+      if (most) c.below = smallOf(most, where)
+    } else if (oid === '2.5.29.15') c.usage = derOf(value, 3, where).content[1] ?? 0
+    else if (oid === '2.5.29.37')
+      c.purposes = { critical, oids: derInside(derOf(value, SEQUENCE, where), where).map((one) => oidOf(one, where)) }
+    else if (oid === '2.5.29.14') c.keyId = derOf(value, 4, where).content
+    else if (oid !== '2.5.29.32') c.unknown ||= critical
+  }
+  return c
+}
+
+/** Whether a signature is good under a certificate's key; null where its kind is not known here. */
+function signedUnder(certificate, oid, digest, message, signature) {
+  const known = SIGNATURES[oid]
+  if (!known || (known[1] !== null && digest !== null && known[1] !== digest)) return null
+  const algorithm = known[1] ?? digest
+  try {
+    const key = createPublicKey({ key: certificate.spki, format: 'der', type: 'spki' })
+    const { namedCurve, modulusLength } = key.asymmetricKeyDetails
+    const curve = ['prime256v1', 'secp384r1'].includes(namedCurve)
+    if (key.asymmetricKeyType !== known[0] || (known[0] === 'ec' && !curve) || modulusLength < 2048) return null
+    if (known[0] === 'ed25519') return verify(null, message, key, signature)
+    if (algorithm === null || algorithm === 'sha1') return null
+    return verify(algorithm, message, key, signature)
+  } catch {
+    return false
+  }
+}
+
+function issued(certificate, issuer, below) {
+  if (!certificate.issuer.equals(issuer.subject) || issuer.unknown || !issuer.ca || issuer.below < below) return false
+  if (issuer.usage !== undefined && (issuer.usage & 4) === 0) return false
+  return signedUnder(issuer, certificate.algorithm, null, certificate.body, certificate.signature) === true
+}
+
+/** The trusted certificate to which one leads, through three authorities at most; null where there is none. */
+function vouchFor(certificate, included, trusted, at, below = 0) {
+  const valid = (one) => one.from <= at && at <= one.until
+  for (const anchor of trusted) {
+    if (anchor.bytes.equals(certificate.bytes) || (valid(anchor) && issued(certificate, anchor, below))) return anchor
+  }
+  if (below === 3) return null
+  for (const issuer of included) {
+    if (issuer === certificate || !valid(issuer) || !issued(certificate, issuer, below)) continue
+    const anchor = vouchFor(issuer, included, trusted, at, below + 1)
+    if (anchor) return anchor
+  }
+  return null
+}
+
+/** Verifies a timestamp over a digest: who signed it, when, and who of the trusted vouches for them, or null. */
+function readTimestamp(bytes, imprint, trusted, where) {
+  if (bytes.length > 64 * 1024) fail(where, 'it is longer than any timestamp.')
+  const answer = derFields(derOf(bytes, SEQUENCE, where), where)
+  const status = smallOf(derFields(answer.take(SEQUENCE), where).take(2), where)
+  if (status > 1) fail(where, `the authority gave no timestamp (status ${status}).`)
+  const outer = derFields(answer.take(SEQUENCE), where)
+  answer.end()
+  if (oidOf(outer.take(), where) !== OIDS.signedData) fail(where, 'it is no signed data.')
+  const data = derFields(derOf(outer.take(0xa0).content, SEQUENCE, where), where)
+  outer.end()
+  data.take(2)
+  data.take(0x31)
+  const inner = derFields(data.take(SEQUENCE), where)
+  if (oidOf(inner.take(), where) !== OIDS.tstInfo) fail(where, 'what is signed is no timestamp.')
+  const content = derOf(inner.take(0xa0).content, 4, where).content
+  inner.end()
+  const held = data.maybe(0xa0)
+  data.maybe(0xa1)
+  const signers = derInside(data.take(0x31), where)
+  data.end()
+  if (signers.length !== 1) fail(where, 'it does not have exactly one signer.')
+
+  const info = derFields(derOf(content, SEQUENCE, where), where)
+  if (smallOf(info.take(2), where) !== 1) fail(where, 'it has another version than 1.')
+  info.take(6)
+  const message = derFields(info.take(SEQUENCE), where)
+  const over = DIGESTS[algorithmOf(message.take(SEQUENCE), where)]
+  if (over !== 'sha256' || !message.take(4).content.equals(imprint))
+    fail(`${where} messageImprint`, 'it is a timestamp of something else.')
+  info.take(2)
+  const stated = asn1Time(info.take(0x18), where)
+  const accuracy = info.maybe(SEQUENCE)
+  info.maybe(1)
+  info.maybe(2)
+  info.maybe(0xa0)
+  const extensions = info.maybe(0xa1)
+  info.end()
+  for (const extension of extensions ? derInside(extensions, where) : []) {
+    const part = derFields(extension, where)
+    part.take(6)
+    const critical = part.maybe(1)
+    if (critical && truthOf(critical, where)) fail(where, 'it has an extension that is not known.')
+  }
+  let late = 0
+  if (accuracy) {
+    const part = derFields(accuracy, where)
+    for (const [tag, unit] of [
+      [2, 1],
+      [0x80, 1000],
+      [0x81, 1_000_000],
+    ]) {
+      const given = part.maybe(tag)
+      const value = given ? smallOf(given, where) : 0
+      if (unit > 1 && value > 999) fail(where, 'its accuracy is not one.')
+      late += value / unit
+    }
+    part.end()
+  }
+
+  const signer = derFields(signers[0], where)
+  signer.take(2)
+  const keyId = signer.maybe(0x80)
+  const named = keyId ? null : derFields(signer.take(SEQUENCE), where)
+  const [issuer, serial] = named ? [named.take(SEQUENCE).all, integerOf(named.take(), where)] : []
+  const digest = DIGESTS[algorithmOf(signer.take(SEQUENCE), where)]
+  const attributes = signer.take(0xa0)
+  const algorithm = algorithmOf(signer.take(SEQUENCE), where)
+  const signature = signer.take(4).content
+  signer.maybe(0xa1)
+  signer.end()
+  if (!digest) fail(`${where} digestAlgorithm`, 'its digest is not one known here.')
+  const signedAttributes = new Map()
+  for (const attribute of derInside(attributes, where)) {
+    const part = derFields(attribute, where)
+    const oid = oidOf(part.take(), where)
+    const values = derInside(part.take(0x31), where)
+    if (values.length !== 1 || signedAttributes.has(oid)) fail(where, 'a signed attribute has not one value.')
+    signedAttributes.set(oid, values[0])
+  }
+  const kind = signedAttributes.get(OIDS.contentType)
+  if (!kind || oidOf(kind, where) !== OIDS.tstInfo)
+    fail(`${where} contentType`, 'its signature is over another kind of content.')
+  const digested = signedAttributes.get(OIDS.messageDigest)?.content
+  if (!digested?.equals(hash(digest, content, 'buffer')))
+    fail(`${where} messageDigest`, 'its signature is over other content.')
+
+  const included = (held ? derInside(held, where) : [])
+    .filter(({ tag }) => tag === SEQUENCE)
+    .map(({ all }) => readCertificate(all, where))
+  if (included.length > 10) fail(where, 'it has too many certificates.')
+  const meant = (one) =>
+    keyId ? one.keyId?.equals(keyId.content) : one.issuer.equals(issuer) && one.serial.equals(serial)
+  const certificate = [...included, ...trusted].find(meant)
+  if (!certificate) fail(`${where} certificates`, 'it holds no certificate of its signer.')
+  const naming = [
+    [OIDS.signingCertificate, 'sha1'],
+    [OIDS.signingCertificateV2, 'sha256'],
+  ].filter(([oid]) => signedAttributes.has(oid))
+  for (const [oid, usual] of naming) {
+    const first = derInside(derFields(signedAttributes.get(oid), where).take(SEQUENCE), where)[0]
+    const part = derFields(first ?? fail(where, 'a signed attribute names no certificate.'), where)
+    const other = part.maybe(SEQUENCE)
+    const by = other ? DIGESTS[algorithmOf(other, where)] : usual
+    if (!by || !part.take(4).content.equals(hash(by, certificate.bytes, 'buffer')))
+      fail(`${where} signingCertificate`, 'its signed attributes name another certificate.')
+  }
+  if (naming.length === 0) fail(`${where} signingCertificate`, 'its signed attributes name no certificate.')
+  const signed = Buffer.from(attributes.all)
+  signed[0] = 0x31 // what is signed is the same bytes as a SET (RFC 5652, section 5.4)
+  const good = signedUnder(certificate, algorithm, digest, signed, signature)
+  if (good === null) fail(`${where} signatureAlgorithm`, 'its signature is of a kind that is not known here.')
+  if (!good) fail(`${where} signature`, `it is not signed by ${certificate.name}.`)
+  const { purposes, usage } = certificate
+  if (!purposes?.critical || purposes.oids.length !== 1 || purposes.oids[0] !== OIDS.timeStamping) {
+    fail(`${where} certificates`, `the certificate of ${certificate.name} is not for timestamps alone.`)
+  }
+  if ((usage !== undefined && (usage & 0xc0) === 0) || certificate.unknown)
+    fail(`${where} certificates`, 'its signer may not sign.')
+  if (stated.seconds < certificate.from || stated.seconds > certificate.until)
+    fail(`${where} genTime`, 'its certificate was not valid then.')
+  return {
+    at: stated.seconds,
+    latest: Math.ceil(stated.seconds + stated.fraction + late),
+    name: certificate.name || 'an authority without a name',
+    by: vouchFor(certificate, included, trusted, stated.seconds),
+  }
+}
+
+/** Certificates of a PEM text. */
+function certificatesOf(pem, where) {
+  const blocks = pem.match(/-----BEGIN CERTIFICATE-----[^-]+-----END CERTIFICATE-----/g) ?? []
+  return blocks.map((block) => readCertificate(Buffer.from(block.split('\n').slice(1, -1).join(''), 'base64'), where))
+}
+
+const isoTime = (seconds) => new Date(seconds * 1000).toISOString().replace('.000Z', 'Z')
+
+/** The first second that is too late: the draw, or, where a coin may be tossed before it, four hours before the round. */
+function tooLate(seal) {
+  const drawAt = time(seal.drawAt, 'seal.json drawAt')
+  const { beacon, tosses } = seal.sources
+  return beacon && tosses
+    ? Math.min(drawAt, beacon.genesisTime + (beacon.round - 1) * beacon.period - 4 * 3600)
+    : drawAt
+}
+
+/** seal.tsr: a timestamp over seal.json, and whether it comes before the draw and any toss. */
+function checkTimestamp(c) {
+  const where = 'seal.tsr'
+  if (!c.files.has(where)) return ''
+  const trusted = [...c.authorities, ...(c.testTimestamps ? certificatesOf(DEVELOPMENT_AUTHORITY, where) : [])]
+  const stamp = readTimestamp(c.files.get(where), fromHex(c.sealDigest), trusted, where)
+  const when = `${stamp.name} put a timestamp on the seal at ${isoTime(stamp.at)}`
+  if (!stamp.by) {
+    c.notShown.push(`The timestamp is by ${stamp.name}, for whom no certificate given here vouches.`)
+    return `${when}; no certificate given here vouches for it.`
+  }
+  if (stamp.latest >= tooLate(c.seal)) {
+    c.notShown.push(`The timestamp by ${stamp.name}, of ${isoTime(stamp.at)}, does not come before the draw.`)
+    return `${when}, which is not before the draw and any toss.`
+  }
+  c.shownBy.push(`the timestamp of ${stamp.name} at ${isoTime(stamp.at)}`)
+  const [own] = certificatesOf(DEVELOPMENT_AUTHORITY, where)
+  const key = toHex(sha256(stamp.by.spki))
+  if (stamp.by.spki.equals(own.spki) || key === DEVELOPMENT_SIGNER_KEY) c.developmentAuthority = true
+  return `${when}, before the draw; ${stamp.by.name || 'a certificate given here'} vouches for it.`
+}
+
+// ---- Outside witnesses of the log (C2SP tlog-cosignature) -----------------------------------------------------------
+//
+// witnessed.txt is a checkpoint from before the draw, with cosignatures: others say that they saw the log so, and that it only
+// grew. witnessed-proof.json leads from the log's entry of this seal to that checkpoint's root.
+
+/** NAME+ID+KEY as people hand it on: an Ed25519 key of type 4. */
+function readWitnessKey(written) {
+  const [, name, id, encoded] = /^([^+\s]+)\+([0-9a-f]{8})\+(.+)$/.exec(written) ?? []
+  const key = encoded && base64(encoded)
+  if (!key || key.length !== 33 || key[0] !== 4) throw new Usage('--witness wants a key as NAME+ID+KEY, of type 4.')
+  const computed = toHex(sha256(Buffer.from(`${name}\n`, 'utf8'), key).subarray(0, 4))
+  if (computed !== id) throw new Usage(`--witness ${name}: the id of this name and key is ${computed}, and not ${id}.`)
+  const der = Buffer.concat([fromHex('302a300506032b6570032100'), key.subarray(1)])
+  return { name, id: fromHex(id), key: createPublicKey({ key: der, format: 'der', type: 'spki' }) }
+}
+
+/** The cosignatures of the given witnesses in a note; one that claims to be of such a witness and is not, fails. */
+function cosignatures(c, note, where) {
+  const found = []
+  note.signatures.forEach(({ name, id, signature }, index) => {
+    const witness = c.witnesses.find((one) => one.name === name && one.id.equals(id))
+    if (!witness) return
+    const seconds = signature.length === 72 ? Number(signature.readBigUInt64BE(0)) : Number.NaN
+    const message = Buffer.from(`cosignature/v1\ntime ${seconds}\n${note.text}`, 'utf8')
+    if (!Number.isSafeInteger(seconds) || !verify(null, message, witness.key, signature.subarray(8))) {
+      fail(`${where} signature ${index + 1}`, `the cosignature of ${name} is not good.`)
+    }
+    found.push({ name, at: seconds })
+  })
+  return found
+}
+
+function checkWitnessed(c) {
+  const found = c.log
+    ? cosignatures(c, c.log.note, 'checkpoint.txt').map(({ name, at }) => `${name} cosigned the log at ${isoTime(at)}.`)
+    : []
+  const present = WITNESSED.filter((name) => c.files.has(name))
+  if (present.length === 0) return found.join(' ')
+  for (const name of WITNESSED)
+    if (!c.files.has(name)) fail(`the member ${name}`, `it is missing, and ${present[0]} is there.`)
+  const head = readCheckpoint(c, 'witnessed.txt')
+  const where = 'witnessed-proof.json'
+  const [entry, ...more] = readLogProof(c, where)
+  const seals = entry?.event === 'sealed' || entry?.event === 'replaced'
+  if (!seals || more.length > 0 || entry.digest !== c.sealDigest)
+    fail(`${where} entries`, 'it is not the one entry of this seal.')
+  leadsTo(entry, head, 'witnessed.txt')
+  const limit = tooLate(c.seal)
+  const cosigned = cosignatures(c, head.note, 'witnessed.txt')
+  for (const { name, at } of cosigned) {
+    if (at < limit) c.shownBy.push(`the cosignature of the witness ${name} at ${isoTime(at)}`)
+    else c.notShown.push(`The cosignature of ${name}, of ${isoTime(at)}, does not come before the draw.`)
+    found.push(`${name} cosigned the log with this seal at ${isoTime(at)}.`)
+  }
+  if (cosigned.length === 0) {
+    const unknown = head.note.signatures.filter(({ name }) => name !== head.origin).map(({ name }) => name)
+    if (unknown.length) c.notShown.push(`The log was cosigned by ${unknown.join(', ')}, whose keys were not given.`)
+    found.push(`A checkpoint of ${head.size} entries, root ${toHex(head.root)}, holds this seal.`)
+  }
+  return found.join(' ')
+}
+
+// ---- Replaced seals (section 3: supersedes) -------------------------------------------------------------------------
+
+const REPLACED = /^replaced-([1-9][0-9]{0,3})\.(json|sig|tsr)$/
+
+/** replaced.json names the seals that were replaced, oldest first; each is named by `supersedes` of the one after it. */
+function checkReplaced(c) {
+  const files = [...c.files.keys()].filter((name) => REPLACED.test(name))
+  const where = 'replaced.json'
+  if (!c.files.has(where)) {
+    if (files.length > 0) fail(`the member ${where}`, `it is missing, and ${files[0]} is there.`)
+    return c.seal.supersedes === null ? '' : 'The seals that this one replaced are not in the archive.'
+  }
+  if (c.files.get(where).length > 2 ** 18) fail(where, 'it is too long.')
+  const record = members(parseCanonical(utf8(c.files.get(where), where), where), ['format', 'kind', 'seals'], where)
+  one(record.format, ['evenpenny/1'], `${where} format`)
+  one(record.kind, ['replaced'], `${where} kind`)
+  const listed = list(record.seals, `${where} seals`)
+  if (listed.length < 1 || listed.length > 1000) fail(`${where} seals`, 'from 1 to 1000 seals are expected.')
+  const stray = files.find((name) => Number(REPLACED.exec(name)[1]) > listed.length)
+  if (stray) fail(stray, 'replaced.json names no seal with this number.')
+  const lists = []
+  let before = null
+  let foreign = 0
+  listed.forEach((entry, k) => {
+    members(entry, ['added', 'changed', 'removed', 'seal'], `${where} seals[${k}]`)
+    for (const name of ['added', 'changed', 'removed'])
+      count(entry[name], 0, MAX_ENTRANTS, `${where} seals[${k}].${name}`)
+    hex(entry.seal, 32, `${where} seals[${k}].seal`)
+    const name = `replaced-${k + 1}`
+    for (const end of ['json', 'sig'])
+      if (!c.files.has(`${name}.${end}`)) fail(`the member ${name}.${end}`, 'it is missing.')
+    const bytes = c.files.get(`${name}.json`)
+    const digest = sha256(bytes)
+    if (toHex(digest) !== entry.seal) fail(`${name}.json`, 'it does not have the digest in replaced.json.')
+    const seal = readSeal(c, bytes, `${name}.json`)
+    if (seal.draw !== c.seal.draw) fail(`${name}.json draw`, 'it is of another draw.')
+    if (seal.supersedes !== before) fail(`${name}.json supersedes`, 'it does not name the seal before it.')
+    const signature = c.files.get(`${name}.sig`)
+    if (signature.length !== 64) fail(`${name}.sig`, 'it does not have the 64 bytes of an Ed25519 signature.')
+    if (seal.key !== c.fingerprint) foreign++
+    else if (!verify(null, bytes, c.publicKey, signature))
+      fail(`${name}.sig`, `it is not the signature of site-key.pem over ${name}.json.`)
+    if (c.files.has(`${name}.tsr`)) readTimestamp(c.files.get(`${name}.tsr`), digest, [], `${name}.tsr`)
+    lists.push(seal.entries.count)
+    before = toHex(digest)
+  })
+  if (c.seal.supersedes !== before) fail('seal.json supersedes', 'it does not name the last seal that was replaced.')
+  lists.push(c.seal.entries.count)
+  listed.forEach(({ added, changed, removed }, k) => {
+    const left = lists[k] - removed
+    if (left < 0 || changed > left || left + added !== lists[k + 1])
+      fail(`${where} seals[${k}]`, 'its counts do not lead from this list to the next.')
+  })
+  return `${listed.length} seals were replaced before this one.${foreign ? ` ${foreign} of them are signed by an earlier key, which is not in the archive.` : ''}`
 }
 
 // ---- Running --------------------------------------------------------------------------------------------------------
@@ -1234,11 +1791,19 @@ function verdict(c) {
       'THIS IS A TEST: its beacon is the development chain, whose secret is public. It shows nothing about a real draw.',
     )
   }
-  lines.push(
-    'Sealed in time: not shown. Only a timestamp, or a checkpoint cosigned by somebody other than the site, over the seal',
-    `  ${c.sealDigest}`,
-    '  from before the draw time and before any toss would show it, and this check reads neither.',
-  )
+  if (c.shownBy.length > 0) {
+    lines.push(`Sealed in time: shown by ${c.shownBy.join(', and by ')}, over the seal`, `  ${c.sealDigest}`)
+    if (c.developmentAuthority)
+      lines.push('THIS IS A TEST: the timestamp is of the development authority, whose key is public.')
+  } else {
+    lines.push(
+      'Sealed in time: not shown. Only a timestamp, or a checkpoint cosigned by somebody other than the site, over the seal',
+      `  ${c.sealDigest}`,
+      '  from before the draw time and before any toss would show it.',
+    )
+    const none = 'This archive has none, or none that a key or certificate given to this check vouches for.'
+    lines.push(`  ${c.notShown.length > 0 ? c.notShown.join(' ') : none}`)
+  }
   lines.push(
     c.key
       ? 'Signed by the key whose fingerprint was given.'
@@ -1277,21 +1842,29 @@ function run(c, say) {
   return { ok: true, step: null, where: null, message: verdict(c), steps }
 }
 
-const USAGE = `Usage: node check.mjs [--key FINGERPRINT] [--test-beacon] [--json] [archive or folder] [receipt.json …]
+const USAGE = `Usage: node check.mjs [--key FINGERPRINT] [--tsa FILE.pem] [--witness NAME+ID+KEY] [--test-beacon] [--test-timestamps] [--json]
+                      [archive or folder] [receipt.json …]
 
   archive or folder   a proof archive, zipped or unpacked; without it, the folder in which check.mjs stands
   receipt.json …      receipts or short proofs to check against it
   --key FINGERPRINT   all 64 hexadecimal digits of the site's key, from its pages, posters or tickets
+  --tsa FILE.pem      the certificate of a timestamp authority that you trust, from a place other than the site; may be repeated
+  --witness KEY       the key of an outside witness of the site's log that you trust, as they hand it on; may be repeated
   --test-beacon       lets the development chain pass, for tests
+  --test-timestamps   lets the development authority vouch for a timestamp, for tests
   --json              prints one JSON object instead of lines`
 
 /** Reads the command line; throws Usage. */
 function options(args) {
-  const c = { key: null, testBeacon: false, json: false, path: null, receipts: [], development: false }
+  const c = { key: null, testBeacon: false, testTimestamps: false, json: false, path: null, receipts: [] }
+  Object.assign(c, { authorities: [], witnesses: [], shownBy: [], notShown: [], development: false })
   const paths = []
   for (let i = 0; i < args.length; i++) {
     if (args[i] === '--test-beacon') c.testBeacon = true
+    else if (args[i] === '--test-timestamps') c.testTimestamps = true
     else if (args[i] === '--json') c.json = true
+    else if (args[i] === '--tsa') c.authorities.push(...readAuthorities(args[++i] ?? ''))
+    else if (args[i] === '--witness') c.witnesses.push(readWitnessKey(args[++i] ?? ''))
     else if (args[i] === '--key') {
       // People write fingerprints in groups and in capitals.
       c.key = (args[++i] ?? '').replace(/[\s:-]/g, '').toLowerCase()
@@ -1305,6 +1878,19 @@ function options(args) {
   c.receipts = paths
   for (const path of paths) if (!statSync(path).isFile()) throw new Usage(`${path} is not a receipt.`)
   return c
+}
+
+/** The certificates in a file that the checker trusts. */
+function readAuthorities(path) {
+  if (!statSync(path, { throwIfNoEntry: false })?.isFile())
+    throw new Usage(`--tsa wants a file with certificates; there is no ${path}.`)
+  try {
+    const found = certificatesOf(readFileSync(path, 'latin1'), path)
+    if (found.length > 0) return found
+  } catch {
+    throw new Usage(`--tsa: a certificate in ${path} cannot be read.`)
+  }
+  throw new Usage(`--tsa: ${path} holds no certificate in PEM.`)
 }
 
 /** Names out of a hostile archive or folder must not steer the terminal. */

@@ -27,14 +27,29 @@ export const LOCKED_MEMBERS = ARCHIVE_MEMBERS.filter((name): name is LockedMembe
 
 /**
  * Members that an archive may have besides, in the order in which we write them: the head of the site's log and what the
- * log says of the draw. Archives from before they were added have none.
+ * log says of the draw; a head from before the draw that outside witnesses cosigned, with the path of the seal's entry;
+ * the seal's timestamp; the seals that were replaced. Archives from before they were added have none.
  */
-export const LATER_MEMBERS = ['checkpoint.txt', 'log-proof.json'] as const
+export const LATER_MEMBERS = [
+  'checkpoint.txt',
+  'log-proof.json',
+  'witnessed.txt',
+  'witnessed-proof.json',
+  'seal.tsr',
+  'replaced.json',
+] as const
 export type LaterMember = (typeof LATER_MEMBERS)[number]
+
+/** A seal that was replaced, its signature and its timestamp; numbers from 1, oldest first. */
+export type ReplacedMember = `replaced-${number}.${'json' | 'sig' | 'tsr'}`
+
+/** Whether a name is that of a file of a replaced seal. */
+export const isReplacedMember = (name: string): name is ReplacedMember =>
+  /^replaced-[1-9][0-9]{0,3}\.(?:json|sig|tsr)$/.test(name)
 
 /** Whether this version reads a member of this name, needed or not. */
 export function isKnownMember(name: string): boolean {
-  return isArchiveMember(name) || (LATER_MEMBERS as readonly string[]).includes(name)
+  return isArchiveMember(name) || (LATER_MEMBERS as readonly string[]).includes(name) || isReplacedMember(name)
 }
 
 /** Whether a name is that of a member which every archive has. */

@@ -2,11 +2,13 @@ import { ArchiveError } from '#shared/archive/archive-error.ts'
 import {
   ARCHIVE_MEMBERS,
   isArchiveMember,
+  isReplacedMember,
   LATER_MEMBERS,
   type LaterMember,
   LOCKED_MEMBERS,
   type LockedMember,
   memberMethod,
+  type ReplacedMember,
 } from '#shared/archive/members.ts'
 import { digestOf, type StreamingHash, SUMS_MEMBER, sumsBytes } from '#shared/archive/sums.ts'
 import type { ZipSource } from '#shared/archive/zip-reader.ts'
@@ -22,15 +24,23 @@ export function proofMember(name: string, content: MemberContent): ZipMember {
 }
 
 /** What the archive under a lock is made of: all its members, and the later ones that there are. */
-export type LockedContents = Readonly<Record<LockedMember, MemberContent> & Partial<Record<LaterMember, MemberContent>>>
+export type LockedContents = Readonly<
+  Record<LockedMember, MemberContent> &
+    Partial<Record<LaterMember, MemberContent>> & { [name: ReplacedMember]: MemberContent }
+>
 
 /** The members of the archive that is kept under a lock (PROTOCOL section 9), ready for `writeZip`. */
 export function lockedMembers(contents: LockedContents): ZipMember[] {
-  return [...LOCKED_MEMBERS, ...LATER_MEMBERS].flatMap((name) => {
+  const replaced = Object.keys(contents)
+    .filter(isReplacedMember)
+    .sort((left, right) => numberOf(left) - numberOf(right))
+  return [...LOCKED_MEMBERS, ...LATER_MEMBERS, ...replaced].flatMap((name) => {
     const content = contents[name]
     return content === undefined ? [] : [proofMember(name, content)]
   })
 }
+
+const numberOf = (name: ReplacedMember): number => Number(/\d+/.exec(name)?.[0])
 
 /** A member of a public archive and the digest of its bytes, in hex. */
 export interface SummedMember {

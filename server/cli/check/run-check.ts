@@ -12,6 +12,7 @@ import type { MembersSource } from '#shared/archive/members-source.ts'
 import { openZip } from '#shared/archive/zip-reader.ts'
 import { checkArchive, type CheckEvent, type CheckReport } from '#shared/protocol/check/check-archive.ts'
 import type { CheckOptions, GivenReceipt } from '#shared/protocol/check/state.ts'
+import { type Certificate, certificatesOfPem } from '#shared/timestamp/certificate.ts'
 import { BEYOND_ANY_CHECK, verdictSentences } from '#shared/protocol/check/verdict.ts'
 
 export interface Output {
@@ -23,8 +24,9 @@ export interface Output {
 export async function runCheck(args: readonly string[], output: Output, limits?: FetchLimits): Promise<0 | 1 | 2> {
   let folder: string | null = null
   try {
-    const { archive, receipts, expectedKey, testBeacon, remember } = readCheckArguments(args)
+    const { archive, receipts, expectedKey, testBeacon, testTimestamps, ...trust } = readCheckArguments(args)
     const given = await readReceipts(receipts)
+    const trustedAuthorities = await readAuthorities(trust.authorities)
     let path: string
     if (archive.kind === 'url') {
       folder = await mkdtemp(join(tmpdir(), 'evenpenny-check-'))
@@ -35,6 +37,9 @@ export async function runCheck(args: readonly string[], output: Output, limits?:
     const report = await checkPath(path, (event) => printEvent(event, output), {
       allowDevelopmentChain: testBeacon,
       receipts: given,
+      trustedAuthorities,
+      allowDevelopmentAuthority: testTimestamps,
+      witnesses: trust.witnesses,
       ...(expectedKey === undefined ? {} : { expectedKey }),
     })
     printReport(report, output)
@@ -75,6 +80,24 @@ export async function checkPath(
   } finally {
     await file.close()
   }
+}
+
+/** The certificates in files of PEM. Throws UsageError where a file holds none that can be read. */
+async function readAuthorities(paths: readonly string[]): Promise<Certificate[]> {
+  const found: Certificate[] = []
+  for (const path of paths) {
+    const text = await readFile(path, 'latin1').catch(() => null)
+    if (text === null) throw new UsageError(`--tsa wants a file with certificates; there is no ${path}.`)
+    let certificates: readonly Certificate[]
+    try {
+      certificates = certificatesOfPem(text)
+    } catch {
+      throw new UsageError(`--tsa: a certificate in ${path} cannot be read.`)
+    }
+    if (certificates.length === 0) throw new UsageError(`--tsa: ${path} holds no certificate in PEM.`)
+    found.push(...certificates)
+  }
+  return found
 }
 
 async function readReceipts(paths: readonly string[]): Promise<GivenReceipt[]> {

@@ -10,6 +10,7 @@ import type { ReceiptCode, ReceiptShapeCode } from '#shared/protocol/receipt.ts'
 import type { ResultCode, ResultShapeCode } from '#shared/protocol/result.ts'
 import type { SealCode } from '#shared/protocol/seal.ts'
 import type { TossesCode } from '#shared/protocol/tosses.ts'
+import type { TimestampCode } from '#shared/timestamp/verify-timestamp.ts'
 
 /** The steps of PROTOCOL section 11, in their order. */
 export const STEP_TITLES = {
@@ -55,6 +56,9 @@ export type StepCode =
   | 'tickets-wrong'
   | 'commitment-mismatch'
   | 'transcript-mismatch'
+  | 'replaced-chain'
+  | 'replaced-signature'
+  | 'replaced-counts'
 
 /** Every reason for which a check can fail: a closed list. */
 export type CheckCode =
@@ -72,6 +76,7 @@ export type CheckCode =
   | ReceiptCode
   | CheckpointCode
   | LogProofCode
+  | TimestampCode
 
 /** The first thing that fails, and where. `at` begins with the member's name; it may hold text out of the archive. */
 export interface CheckFailure {

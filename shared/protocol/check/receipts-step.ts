@@ -1,5 +1,7 @@
 import type { Sha256 } from '#shared/bytes/hashing.ts'
 import { checkLog } from '#shared/protocol/check/log-members.ts'
+import { checkReplaced } from '#shared/protocol/check/replaced-members.ts'
+import { checkTimestamp, checkWitnessed } from '#shared/protocol/check/time-members.ts'
 import { need, StepFailure } from '#shared/protocol/check/failure.ts'
 import { type CheckStep, type GivenReceipt, throwIfCancelled } from '#shared/protocol/check/state.ts'
 import { checkReceipt, parseReceipt } from '#shared/protocol/receipt.ts'
@@ -24,8 +26,8 @@ export function examineReceipt(
 }
 
 /**
- * Step 12: receipts and short proofs, where given (PROTOCOL section 10), and what the site's log says of the draw, where
- * the archive has it; other later members are named, not examined.
+ * Step 12: receipts and short proofs, where given (PROTOCOL section 10), and of the later members those that the archive
+ * has: what the site's log says of the draw, timestamps, witnesses, replaced seals. Others are named, not examined.
  */
 export const checkReceipts: CheckStep = async (state) => {
   const found: string[] = []
@@ -35,6 +37,11 @@ export const checkReceipts: CheckStep = async (state) => {
   }
   if (found.length === 0) found.push('No receipt was given.')
   found.push(...(await checkLog(state)))
+  state.shownBy = []
+  state.notShown = []
+  found.push(...(await checkTimestamp(state)))
+  found.push(...(await checkWitnessed(state)))
+  found.push(...(await checkReplaced(state)))
   if (state.notExamined.length > 0) found.push(`Not examined: ${state.notExamined.join(', ')}.`)
   return found.join(' ')
 }

@@ -5,8 +5,11 @@ import type { CheckTools } from '#shared/protocol/check/tools.ts'
 import { StepFailure } from '#shared/protocol/check/failure.ts'
 import type { CheckpointNote } from '#shared/log/checkpoint.ts'
 import type { ProvenEntry } from '#shared/log/log-proof.ts'
+import type { NoteKey } from '#shared/log/signed-note.ts'
+import type { Shower } from '#shared/protocol/check/time-members.ts'
 import type { DrawResult } from '#shared/protocol/result.ts'
 import type { Seal } from '#shared/protocol/seal-types.ts'
+import type { Certificate } from '#shared/timestamp/certificate.ts'
 
 /** A receipt or short proof to be checked against the archive; `name` is for the report only. */
 export interface GivenReceipt {
@@ -25,6 +28,12 @@ export interface CheckOptions {
   /** The fingerprint that the site publishes, 64 lower-case hex digits. */
   readonly expectedKey?: string
   readonly receipts?: readonly GivenReceipt[]
+  /** Certificates of timestamp authorities, or of those who issued theirs, that the checker trusts. */
+  readonly trustedAuthorities?: readonly Certificate[]
+  /** Lets the development authority vouch for a timestamp, whose key is public; the verdict then says so. */
+  readonly allowDevelopmentAuthority?: boolean
+  /** Keys of outside witnesses of the site's log that the checker trusts, of type 4. */
+  readonly witnesses?: readonly NoteKey[]
   readonly signal?: CancelSignal
 }
 
@@ -64,6 +73,9 @@ export interface CheckState {
   transcriptDigest: string
   /** The head of the site's log and the entry in it that sealed the draw, where the archive has them: from step 12 on. */
   log: { readonly head: CheckpointNote; readonly sealed: ProvenEntry } | null
+  /** Who, other than the site, saw the seal in time; and why others in the archive do not show it. From step 12 on. */
+  shownBy: Shower[]
+  notShown: string[]
   /** Winning leaves whose label is not open. */
   withheld: readonly number[]
   /** What the archive or the folder holds and this version does not read. */
@@ -85,6 +97,10 @@ export const MEMBER_LIMITS = {
   'site-key.pem': 2 ** 12,
   'checkpoint.txt': 2 ** 18,
   'log-proof.json': 2 ** 24,
+  'witnessed.txt': 2 ** 18,
+  'witnessed-proof.json': 2 ** 16,
+  'seal.tsr': 2 ** 16,
+  'replaced.json': 2 ** 18,
 } as const
 
 /** A whole member; fails where it passes its limit. */

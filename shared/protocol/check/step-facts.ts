@@ -1,4 +1,5 @@
 import { toHex } from '#shared/bytes/hex.ts'
+import { formatTime } from '#shared/bytes/time.ts'
 import type { StepNumber } from '#shared/protocol/check/failure.ts'
 import type { MEMBER_LIMITS } from '#shared/protocol/check/state.ts'
 import { type CheckState } from '#shared/protocol/check/state.ts'
@@ -111,6 +112,21 @@ const FACTS: Readonly<Partial<Record<StepNumber, Tell>>> = {
   11: ({ result, transcriptDigest }) => ({
     inputs: [['Digest that the result states', result?.transcript]],
     outputs: [['Digest of transcript.jsonl', transcriptDigest]],
+  }),
+  12: ({ source, seal, log, shownBy }) => ({
+    inputs: [
+      ['Bytes of seal.tsr', sizeOf(source, 'seal.tsr')],
+      ['Bytes of log-proof.json', sizeOf(source, 'log-proof.json')],
+      ['Bytes of replaced.json', sizeOf(source, 'replaced.json')],
+      ['Drawn at the earliest', seal?.drawAt],
+    ],
+    outputs: [
+      ['Entry of the log that is this seal', log?.sealed.index],
+      ...(shownBy ?? []).map(({ kind, name, at }): [string, string] => [
+        kind === 'timestamp' ? 'Timestamped in time by' : 'Cosigned in time by',
+        `${name}, ${formatTime(at)}`,
+      ]),
+    ],
   }),
 }
 

@@ -1,12 +1,16 @@
 import { toHex } from '#shared/bytes/hex.ts'
+import { formatTime } from '#shared/bytes/time.ts'
 import type { CheckState } from '#shared/protocol/check/state.ts'
+import type { Shower } from '#shared/protocol/check/time-members.ts'
 import { networkOf } from '#shared/protocol/networks.ts'
 
 /**
- * Whether the seal is shown to be older than the draw (PROTOCOL section 11). Only a timestamp, or a checkpoint cosigned
- * by somebody other than the site, shows it: members that bring one will add a case here.
+ * Whether the seal is shown to be older than the draw (PROTOCOL section 11), and by whom: only a timestamp of an authority,
+ * or a checkpoint cosigned by a witness, that the checker trusts shows it. `why` tells of others, in whole sentences.
  */
-export type SealedInTime = { readonly shown: false }
+export type SealedInTime =
+  | { readonly shown: true; readonly by: readonly Shower[] }
+  | { readonly shown: false; readonly why: readonly string[] }
 
 /** What a check that has passed all its steps says. */
 export interface CheckVerdict {
@@ -37,7 +41,7 @@ export function verdictOf(state: CheckState): CheckVerdict {
   const { beacon } = state.seal.sources
   return {
     arithmetic: 'holds',
-    sealedInTime: { shown: false },
+    sealedInTime: state.shownBy.length > 0 ? { shown: true, by: state.shownBy } : { shown: false, why: state.notShown },
     sealDigest: state.sealDigestHex,
     fingerprint: state.fingerprint,
     keyCompared: state.options.expectedKey !== undefined,
@@ -54,12 +58,33 @@ function logOf({ log }: CheckState): CheckVerdict['log'] {
   return { origin, size, rootHex: toHex(root) }
 }
 
+function timeSentences({ sealedInTime, sealDigest }: CheckVerdict): readonly string[] {
+  if (!sealedInTime.shown) {
+    const none = 'This archive has none, or none that a key or certificate given to this check vouches for.'
+    return [
+      'Sealed in time: not shown. Only a timestamp, or a checkpoint cosigned by somebody other than the site, over the seal ' +
+        `${sealDigest} from before the draw would show it. ${sealedInTime.why.length > 0 ? sealedInTime.why.join(' ') : none}`,
+    ]
+  }
+  const by = sealedInTime.by.map(({ kind, name, at }) =>
+    kind === 'timestamp'
+      ? `the timestamp of ${name} at ${formatTime(at)}`
+      : `the cosignature of the witness ${name} at ${formatTime(at)}`,
+  )
+  const sentences = [`Sealed in time: shown by ${by.join(', and by ')}, over the seal ${sealDigest}.`]
+  if (sealedInTime.by.some(({ development }) => development)) {
+    sentences.push(
+      'This is a test: the timestamp is of the development authority, whose key is public, so anybody could have made it.',
+    )
+  }
+  return sentences
+}
+
 /** The verdict in whole sentences, the two halves first. */
 export function verdictSentences(verdict: CheckVerdict): readonly string[] {
   const sentences = [
     'The arithmetic holds: from this seal and these sources, these picks follow and no others.',
-    'Sealed in time: not shown. Only a timestamp, or a checkpoint cosigned by somebody other than the site, over the seal ' +
-      `${verdict.sealDigest} from before the draw would show it, and this archive has none that this check reads.`,
+    ...timeSentences(verdict),
   ]
   if (verdict.developmentChain) {
     sentences.push(

@@ -12,7 +12,8 @@ import { unwrap } from '#shared/bytes/result.ts'
 import { formatTime, parseTime } from '#shared/bytes/time.ts'
 import { canonicalText } from '#shared/bytes/canonical-json.ts'
 import { checkpointText, logKey } from '#shared/log/checkpoint.ts'
-import { formatNote } from '#shared/log/signed-note.ts'
+import { cosign } from '#shared/log/cosignature.ts'
+import { formatNote, type NoteKey, noteKey } from '#shared/log/signed-note.ts'
 import { commitEntrant, deriveSalts, referenceFromEntropy } from '#shared/protocol/commitments.ts'
 import { signDevelopmentRound } from '#shared/protocol/development-chain.ts'
 import { prepareEntries, type SealEntrant } from '#shared/protocol/entrants.ts'
@@ -20,17 +21,19 @@ import { writeEntries } from '#shared/protocol/entries-csv.ts'
 import { labelsBytes } from '#shared/protocol/labels.ts'
 import { beaconFor, DEVELOPMENT_CHAIN } from '#shared/protocol/networks.ts'
 import { makeReceipt } from '#shared/protocol/receipt.ts'
+import { replacedBytes, type ReplacedSeal } from '#shared/protocol/replaced.ts'
 import { seedCommitment } from '#shared/protocol/seal.ts'
 import type { Seal } from '#shared/protocol/seal-types.ts'
 import { settleDraw, winningLeaves } from '#shared/protocol/settle.ts'
 import { encodePem, keyFingerprint, publicKeyOf, signBytes } from '#shared/protocol/signature.ts'
 import { tossBits } from '#shared/protocol/tosses.ts'
+import { signDevelopmentTimestamp } from '#shared/timestamp/development-authority.ts'
 import type { WalkRule } from '#shared/sampling/walk.ts'
 import { collect } from '#tests/support/archive/collect.ts'
 import { TestLog } from '#tests/support/log/test-log.ts'
 
 /** Kinds of draw that tests start from. */
-export const BASES = ['beacon', 'beacon-and-tosses', 'tosses-only', 'hall', 'hall-every-ticket'] as const
+export const BASES = ['beacon', 'beacon-and-tosses', 'tosses-only', 'hall', 'hall-every-ticket', 'corrected'] as const
 export type Base = (typeof BASES)[number]
 
 /** The places at which one thing can be changed, in the order in which they are passed. */
@@ -47,7 +50,7 @@ export interface Stages {
   /** The list as it lies in the archive. */
   entries(csv: string): string
   labels(text: string): string
-  signature(record: 'seal' | 'result' | 'checkpoint', signature: Uint8Array, message: Uint8Array): Uint8Array
+  signature(record: SignedRecord, signature: Uint8Array, message: Uint8Array): Uint8Array
   /** The leaves of the site's log, a line each, before they are hashed. */
   logLeaves(text: string): string
   /** The checkpoint's lines before they are signed, and the note as it lies in the archive. */
@@ -56,14 +59,33 @@ export interface Stages {
   /** Numbers of the entries that are proven: those of the draw. */
   logEntries(own: readonly number[]): readonly number[]
   logProof(text: string): string
-  /** Whether an archive has this member of the log. */
-  hasLogMember(name: 'checkpoint.txt' | 'log-proof.json'): boolean
+  /** The timestamp of the seal: seconds since 1970, what it is over, and its bytes. */
+  stampTime(seconds: number): number
+  stampImprint(digest: Uint8Array): Uint8Array
+  stamp(response: Uint8Array): Uint8Array
+  /** The log from before the draw that a witness cosigned: its entries that are proven, proofs, note, and the witness's time. */
+  witnessedEntries(own: readonly number[]): readonly number[]
+  witnessedProof(text: string): string
+  witnessed(note: string): string
+  witnessTime(seconds: number): number
+  /** The seals that were replaced, oldest first, and the record of them. */
+  replacedSeal(seal: unknown, number: number): unknown
+  replaced(text: string): string
+  /** Whether an archive has this later member. */
+  hasLater(name: string): boolean
   member(name: string, bytes: Uint8Array): Uint8Array | null
   extraMembers(): readonly (readonly [string, Uint8Array])[]
   sums(text: string): string
   receipt(receipt: unknown): unknown
   receiptText(text: string): string
 }
+
+/** What carries a signature of the site's key. */
+export type SignedRecord = 'seal' | 'result' | 'checkpoint' | `replaced-${number}`
+
+const WITNESS_SECRET = new Uint8Array(32).fill(3)
+/** An outside witness of the log. */
+export const WITNESS: NoteKey = noteKey(sha256, 'lighthouse.example/witness', 4, publicKeyOf(WITNESS_SECRET))
 
 /** The members of an archive in their order, and a receipt of leaf 2. */
 export interface TestArchive {
@@ -110,13 +132,13 @@ function fixedRound(index: number, length: number): string {
 
 function sourcesOf(base: Base, seed: Uint8Array, drawAt: number): Seal['sources'] {
   const hall = base === 'hall' || base === 'hall-every-ticket'
-  const withBeacon = base === 'beacon' || base === 'beacon-and-tosses'
+  const withBeacon = base === 'beacon' || base === 'beacon-and-tosses' || base === 'corrected'
   const tosses = { minimumBits: base === 'tosses-only' ? 64 : 16, roundLength: 32, witnesses: ['Clerk of the parish'] }
   return {
     beacon: withBeacon ? beaconFor(DEVELOPMENT_CHAIN, drawAt) : null,
     flips: hall ? 'tossed' : 'derived',
     seedCommit: hall ? null : toHex(seedCommitment(sha256, seed)),
-    tosses: base === 'beacon' ? null : tosses,
+    tosses: base === 'beacon' || base === 'corrected' ? null : tosses,
   }
 }
 
@@ -167,6 +189,12 @@ export async function testArchive(base: Base, stages: Partial<Stages> = {}): Pro
     supersedes: null,
     reason: null,
   }
+  const sign = (record: SignedRecord, message: Uint8Array) => {
+    const signature = signBytes(secretKey, message)
+    return stages.signature?.(record, signature, message) ?? signature
+  }
+  const earlier = base === 'corrected' ? replacedMembers(stages, seal, drawAt, sign) : null
+  if (earlier) Object.assign(seal, { supersedes: earlier.last, reason: 'A stub book was found.' })
   const sealText = pass(stages.sealText, canonicalText(pass(stages.seal, structuredClone(seal))))
   const sealBytes = utf8(sealText)
   const sealDigest = sha256(sealBytes)
@@ -202,17 +230,19 @@ export async function testArchive(base: Base, stages: Partial<Stages> = {}): Pro
     return { label, labelSalt: toHex(salts.labelSalt), leaf }
   })
 
-  const sign = (record: 'seal' | 'result' | 'checkpoint', message: Uint8Array) => {
-    const signature = signBytes(secretKey, message)
-    return stages.signature?.(record, signature, message) ?? signature
-  }
   const log = logMembers(stages, {
     draw: seal.draw,
     sealDigest: toHex(sealDigest),
     resultDigest: toHex(sha256(utf8(resultText))),
+    drawAt,
     publicKey,
     sign: (message) => sign('checkpoint', message),
   })
+  const stampTime = pass(stages.stampTime, drawAt - 3598)
+  const imprint = pass(stages.stampImprint, sealDigest)
+  const stamp = signDevelopmentTimestamp({ imprint, nonce: null, certificates: true }, stampTime, 41)
+  const later = { ...log, 'seal.tsr': pass(stages.stamp, stamp), ...earlier?.members }
+  const has = stages.hasLater ?? (() => true)
   checkFiles ??= readCheckFiles()
   const contents = lockedMembers({
     'CHECKING.txt': utf8(CHECKING_TEXT),
@@ -224,7 +254,7 @@ export async function testArchive(base: Base, stages: Partial<Stages> = {}): Pro
     'result.sig': sign('result', utf8(resultText)),
     'transcript.jsonl': utf8(transcript),
     'site-key.pem': utf8(encodePem(publicKey)),
-    ...log,
+    ...Object.fromEntries(Object.entries(later).filter(([name]) => has(name))),
     ...(await checkFiles),
   })
   contents.push(proofMember('labels.jsonl', utf8(pass(stages.labels, new TextDecoder().decode(labelsBytes(labels))))))
@@ -259,10 +289,11 @@ function logMembers(
     readonly draw: string
     readonly sealDigest: string
     readonly resultDigest: string
+    readonly drawAt: number
     readonly publicKey: Uint8Array
     sign(message: Uint8Array): Uint8Array
   },
-): { 'checkpoint.txt'?: Uint8Array; 'log-proof.json'?: Uint8Array } {
+): Record<string, Uint8Array> {
   const { draw, sealDigest, resultDigest, publicKey } = facts
   const log = new TestLog()
   log.add('autumn-raffle', 'opened')
@@ -279,14 +310,74 @@ function logMembers(
   const text = pass(stages.checkpointText, checkpointText(log.head()))
   const key = logKey(sha256, log.origin, publicKey)
   const note = formatNote({ text, signatures: [{ name: key.name, id: key.id, signature: facts.sign(utf8(text)) }] })
-  const members = {
+  const proofOf = (entries: readonly number[], size?: number) => new TextDecoder().decode(log.proof(entries, size))
+  return {
     'checkpoint.txt': utf8(pass(stages.checkpoint, note)),
-    'log-proof.json': utf8(pass(stages.logProof, new TextDecoder().decode(log.proof(pass(stages.logEntries, own))))),
+    'log-proof.json': utf8(pass(stages.logProof, proofOf(pass(stages.logEntries, own)))),
+    'witnessed.txt': utf8(pass(stages.witnessed, cosignedNote(stages, log, key, facts))),
+    'witnessed-proof.json': utf8(
+      pass(stages.witnessedProof, proofOf(pass(stages.witnessedEntries, [SEALED_ENTRY]), WITNESSED_SIZE)),
+    ),
   }
-  const has = stages.hasLogMember ?? (() => true)
-  return Object.fromEntries(
-    Object.entries(members).filter(([name]) => has(name as 'checkpoint.txt' | 'log-proof.json')),
-  )
+}
+
+/** The entry that seals the draw, and the size at which the witness saw the log. */
+const SEALED_ENTRY = 4
+const WITNESSED_SIZE = 6
+
+/** The head of the log before the draw, signed by the site and cosigned by the witness of the tests. */
+function cosignedNote(
+  stages: Partial<Stages>,
+  log: TestLog,
+  key: NoteKey,
+  facts: { readonly drawAt: number; readonly sealDigest: string; sign(message: Uint8Array): Uint8Array },
+): string {
+  const text = checkpointText(log.head(WITNESSED_SIZE))
+  const time = pass(stages.witnessTime, facts.drawAt - 3000)
+  const own = { name: key.name, id: key.id, signature: signBytes(fixedEntropy('signing key', 32), utf8(text)) }
+  return formatNote({
+    text,
+    signatures: [own, cosign(text, time, WITNESS, (message) => signBytes(WITNESS_SECRET, message))],
+  })
+}
+
+/** Two seals before this one, with what a change of the list looks like. */
+function replacedMembers(
+  stages: Partial<Stages>,
+  seal: Seal,
+  drawAt: number,
+  sign: (record: SignedRecord, message: Uint8Array) => Uint8Array,
+): { readonly last: string; readonly members: Record<string, Uint8Array> } {
+  const members: Record<string, Uint8Array> = {}
+  const counts = [
+    { added: 2, changed: 3, removed: 1 },
+    { added: 1, changed: 0, removed: 1 },
+  ]
+  const seals: ReplacedSeal[] = []
+  let before: string | null = null
+  for (const [index, count] of counts.entries()) {
+    const root = toHex(sha256(utf8(`list ${index}`)))
+    const entries = { count: index === 0 ? 10 : 11, root, tickets: 90 + index }
+    const changes = {
+      sealedAt: formatTime(drawAt - 90_000 + index * 3600),
+      drawAt: formatTime(drawAt - 7200 + index * 3600),
+    }
+    const beacon = beaconFor(DEVELOPMENT_CHAIN, drawAt - 7200 + index * 3600)
+    const seed = toHex(seedCommitment(sha256, fixedEntropy(`seed ${index}`, 32)))
+    const sources = { ...seal.sources, beacon, seedCommit: seed }
+    const reason = before === null ? null : 'The hall was flooded.'
+    const made: unknown = { ...seal, ...changes, entries, sources, supersedes: before, reason }
+    const bytes = utf8(canonicalText(stages.replacedSeal?.(made, index + 1) ?? made))
+    const digest = sha256(bytes)
+    members[`replaced-${index + 1}.json`] = bytes
+    members[`replaced-${index + 1}.sig`] = sign(`replaced-${index + 1}`, bytes)
+    const request = { imprint: digest, nonce: null, certificates: true }
+    members[`replaced-${index + 1}.tsr`] = signDevelopmentTimestamp(request, drawAt - 89_000 + index * 3600, 7 + index)
+    before = toHex(digest)
+    seals.push({ ...count, seal: before })
+  }
+  members['replaced.json'] = utf8(pass(stages.replaced, new TextDecoder().decode(replacedBytes(seals))))
+  return { last: before ?? '', members }
 }
 
 function pass<T>(stage: ((value: T) => T) | undefined, value: T): T {

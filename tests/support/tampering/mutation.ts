@@ -59,7 +59,7 @@ const stages = z.strictObject({
   shortProof: z.boolean().optional(),
   signature: z
     .strictObject({
-      record: z.enum(['seal', 'result', 'checkpoint']),
+      record: z.enum(['seal', 'result', 'checkpoint', 'replaced-1', 'replaced-2']),
       change: z.enum(['flip', 'other-key', 'other-record', 'longer', 'shorter', 'add-order', 'small-order']),
     })
     .optional(),
@@ -71,8 +71,29 @@ const stages = z.strictObject({
   logProof: z.array(textChange).optional(),
   /** Numbers of the entries that are proven, in place of the draw's: 1, 3, 4 and 6. */
   logEntries: z.array(z.number()).optional(),
-  /** Members of the log that the archive does without. */
-  withoutLog: z.array(z.enum(['checkpoint.txt', 'log-proof.json'])).optional(),
+  /** The timestamp of the seal: how long before the draw in seconds, over another digest, and its bytes. */
+  stamp: z
+    .strictObject({
+      beforeDraw: z.number().optional(),
+      imprint: z.literal('other').optional(),
+      /** Changes one bit of what is named. */
+      flip: z.enum(['signature', 'content', 'attributes', 'certificate', 'status']).optional(),
+      /** Answers as an authority that gives none, or with other bytes. */
+      bytes: z.enum(['refused', 'empty', 'cut', 'longer', 'indefinite', 'nested', 'large', 'by-a-stranger']).optional(),
+    })
+    .optional(),
+  /** Other bytes in the place of the timestamp, hex. */
+  stampBytes: z.string().optional(),
+  /** The checkpoint that a witness cosigned: its note, its proof, the entries proven in place of the seal's, 4, its time. */
+  witnessed: z.array(textChange).optional(),
+  witnessedProof: z.array(textChange).optional(),
+  witnessedEntries: z.array(z.number()).optional(),
+  witnessedBeforeDraw: z.number().optional(),
+  /** Replaced seals by their numbers, before the chain is made, and the record of them behind it. */
+  replacedSeals: z.partialRecord(z.enum(['1', '2']), z.array(objectChange)).optional(),
+  replaced: z.array(textChange).optional(),
+  /** Later members that the archive does without. */
+  without: z.array(z.string()).optional(),
   /** Changes the bytes of members behind SHA256SUMS, as damage does; null takes one out. */
   damage: z.record(z.string(), z.array(textChange).nullable()).optional(),
   /** Members that the format does not know. */
@@ -107,6 +128,8 @@ export const mutationFile = z.strictObject({
   key: z.string().optional(),
   withoutTestBeacon: z.boolean().optional(),
   giveReceipt: z.boolean().optional(),
+  /** Gives the key of the witness of the tests. */
+  giveWitness: z.boolean().optional(),
   step: z.number().int().min(1).max(12),
   code: z.string(),
 })

@@ -6,6 +6,7 @@ import { type Receipt, shortProof } from '#shared/protocol/receipt.ts'
 import { signBytes } from '#shared/protocol/signature.ts'
 import { type Stages, testArchive } from '#tests/support/archive/test-draw.ts'
 import { rawZip, type RawZipEntry } from '#tests/support/archive/zip-patch.ts'
+import { changeStamp } from '#tests/support/tampering/change-stamp.ts'
 import { changeObject, changeText } from '#tests/support/tampering/changes.ts'
 import type { Mutation, ObjectChange, TextChange } from '#tests/support/tampering/mutation.ts'
 
@@ -40,7 +41,19 @@ export async function tamper({ base, change }: Pick<Mutation, 'base' | 'change'>
     checkpoint: texts(change.checkpoint),
     logEntries: (own) => change.logEntries ?? own,
     logProof: texts(change.logProof),
-    hasLogMember: (name) => !change.withoutLog?.includes(name),
+    hasLater: (name) => !change.without?.includes(name),
+    stampTime: (seconds) =>
+      change.stamp?.beforeDraw === undefined ? seconds : seconds + 3598 - change.stamp.beforeDraw,
+    stampImprint: (digest) => (change.stamp?.imprint === undefined ? digest : sha256(digest)),
+    stamp: (response) =>
+      change.stampBytes === undefined ? changeStamp(change.stamp ?? {}, response) : hexBytes(change.stampBytes),
+    witnessed: texts(change.witnessed),
+    witnessedProof: texts(change.witnessedProof),
+    witnessedEntries: (own) => change.witnessedEntries ?? own,
+    witnessTime: (seconds) =>
+      change.witnessedBeforeDraw === undefined ? seconds : seconds + 3000 - change.witnessedBeforeDraw,
+    replacedSeal: (seal, number) => objects(change.replacedSeals?.[number === 1 ? '1' : '2'])(seal),
+    replaced: texts(change.replaced),
     receipt: (receipt) => objects(change.receipt)(short ? shortProof(sha256, receipt as Receipt) : receipt),
     receiptText: texts(change.receiptText),
     signature: (record, good, message) =>
