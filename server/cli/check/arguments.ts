@@ -11,6 +11,7 @@ export const CHECK_USAGE = `Usage: npm run check -- [options] proof.zip [receipt
   --key FINGERPRINT   all 64 hexadecimal digits of the site's key, from its pages, posters or tickets
   --tsa FILE.pem      the certificate of a timestamp authority that you trust, from a place other than the site; may be repeated
   --witness KEY       the key (NAME+ID+KEY) of an outside witness of the site's log that you trust; may be repeated
+  --remember FILE     keeps the last checkpoint of the site's log in a file; with --url, proves that the log only grew
   --test-beacon       lets the development chain pass, for tests and rehearsals
   --test-timestamps   lets the development authority vouch for a timestamp, for tests and rehearsals`
 
@@ -22,6 +23,8 @@ export interface CheckArguments {
   readonly receipts: readonly string[]
   readonly expectedKey: string | undefined
   readonly testBeacon: boolean
+  /** Where the last checkpoint of the log is kept. */
+  readonly remember: string | undefined
   readonly testTimestamps: boolean
   /** Files with certificates in PEM. */
   readonly authorities: readonly string[]
@@ -35,6 +38,7 @@ export function readCheckArguments(args: readonly string[]): CheckArguments {
   const common = {
     expectedKey: readFingerprint(values.key),
     testBeacon: values['test-beacon'] === true,
+    remember: values.remember,
     testTimestamps: values['test-timestamps'] === true,
     authorities: values.tsa ?? [],
     witnesses: (values.witness ?? []).map(readWitness),
@@ -54,6 +58,7 @@ function parse(args: readonly string[]) {
         'test-beacon': { type: 'boolean' },
         'test-timestamps': { type: 'boolean' },
         key: { type: 'string' },
+        remember: { type: 'string' },
         tsa: { type: 'string', multiple: true },
         url: { type: 'string' },
         witness: { type: 'string', multiple: true },

@@ -24,7 +24,7 @@ export interface Output {
 export async function runCheck(args: readonly string[], output: Output, limits?: FetchLimits): Promise<0 | 1 | 2> {
   let folder: string | null = null
   try {
-    const { archive, receipts, expectedKey, testBeacon, testTimestamps, ...trust } = readCheckArguments(args)
+    const { archive, receipts, expectedKey, testBeacon, remember, testTimestamps, ...trust } = readCheckArguments(args)
     const given = await readReceipts(receipts)
     const trustedAuthorities = await readAuthorities(trust.authorities)
     let path: string
