@@ -8,7 +8,7 @@ interface Named {
 
 /** HTML for another site: the card in a frame. */
 export function cardFrame(origin: string, draw: Named): string {
-  return `<iframe src="${origin}/embed/draws/${draw.slug}"\n  title="${nameOf(draw)}"\n  width="480" height="560" loading="lazy"\n  style="border:0;max-width:100%"></iframe>`
+  return `<iframe src="${origin}/embed/draws/${draw.slug}"\n  title="${nameOf(draw)}"\n  width="480" height="780" loading="lazy"\n  style="border:0;max-width:100%"></iframe>`
 }
 
 /** HTML for another site: the card as a picture that leads to the draw. The words beside it hold in every state. */

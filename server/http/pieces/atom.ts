@@ -23,12 +23,12 @@ function entryOf(entry: FeedEntry, origin: string, host: string): string {
   const note = entry.note ? ` “${entry.note}”` : ''
   return `<entry>
 <id>tag:${host},${day(entry.at)}:log/${entry.index}</id>
-<title>${xmlText(`${eventTitle(entry.event)}: ${entry.draw.title}`)}</title>
+<title>${xmlText(`${eventTitle(entry)}: ${entry.draw.title}`)}</title>
 <updated>${entry.at}</updated>
 <published>${entry.at}</published>
 <link rel="alternate" type="text/html" href="${origin}/draws/${entry.draw.slug}"/>
 <category term="${xmlText(entry.event)}"/>
-<content type="text">${xmlText(`${eventMeaning(entry.event)}${note}`)}</content>
+<content type="text">${xmlText(`${eventMeaning(entry)}${note}`)}</content>
 </entry>
 `
 }

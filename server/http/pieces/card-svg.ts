@@ -17,7 +17,8 @@ export function cardSvg(facts: CardFacts): string {
   const parts: string[] = []
   let y = PAD
   const write = (text: string, size: number, kind: string, most: number) => {
-    for (const line of wrap(text, INNER / size, most)) {
+    // Bold letters are wider by an eighth or so, monospaced ones by less.
+    for (const line of wrap(text, INNER / size / (kind === 'strong' ? 1.15 : 1), most)) {
       y += size * 1.3
       const at = `x="${PAD}" y="${round(y - size * 0.25)}" font-size="${size}"`
       parts.push(`<text ${at} class="${kind}">${xmlText(line)}</text>`)
@@ -73,9 +74,9 @@ const round = (value: number) => Math.round(value * 10) / 10
 function widthOf(character: string): number {
   if (/[\u1100-\u11ff\u2e80-\u9fff\uac00-\ud7af\uf900-\ufaff\uff00-\uff60\u{1f000}-\u{3ffff}]/u.test(character))
     return 1.05
-  if (/[MWmw@%]/.test(character)) return 0.9
-  if (/\p{Lu}/u.test(character)) return 0.7
-  return /[ilj.,:;'|!() ]/.test(character) ? 0.32 : 0.57
+  if (/[MWmw@%]/.test(character)) return 0.98
+  if (/\p{Lu}/u.test(character)) return 0.74
+  return /[ilj.,:;'|!() ]/.test(character) ? 0.36 : 0.62
 }
 
 const measure = (text: string) => [...text].reduce((sum, character) => sum + widthOf(character), 0)

@@ -1,6 +1,7 @@
 import { useApp } from '#src/lib/app-context.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Part } from '#src/ui/page.tsx'
+import { Path } from './path.tsx'
 
 const CALLS: readonly (readonly [path: string, what: string])[] = [
   ['/draws', 'Every public draw, 20 to a page. q searches, state narrows.'],
@@ -28,10 +29,10 @@ export function ApiPart() {
         </Link>{' '}
         has every field with examples.
       </p>
-      <ul className="figures files">
+      <ul className="figures files mt-unit">
         {CALLS.map(([path, what]) => (
           <li key={path}>
-            <code>{path}</code>
+            <Path path={path} />
             <span>{what}</span>
           </li>
         ))}

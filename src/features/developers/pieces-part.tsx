@@ -1,6 +1,7 @@
 import { useApp } from '#src/lib/app-context.ts'
 import { cardFrame, cardPicture } from '#src/lib/card-snippets.ts'
 import { Part } from '#src/ui/page.tsx'
+import { Path } from './path.tsx'
 
 const EXAMPLE = { slug: 'its-name', title: 'Its title', organisation: { name: 'its organisation' } }
 
@@ -18,11 +19,11 @@ export function PiecesPart() {
       </code>
       <ul className="figures files mt-unit">
         <li>
-          <code>/draws/…/qr.svg</code>
+          <Path path="/draws/…/qr.svg" />
           <span>A QR code that leads to the draw. The same for an organisation: /organisations/…/qr.svg</span>
         </li>
         <li>
-          <code>/organisations/…/feed.atom</code>
+          <Path path="/organisations/…/feed.atom" />
           <span>An Atom feed (RFC 4287): draws opened, sealed, postponed, cancelled, drawn.</span>
         </li>
       </ul>

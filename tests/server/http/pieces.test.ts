@@ -5,6 +5,7 @@ import request from 'supertest'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { settableClock } from '#server/adapters/clock/clock.ts'
 import { cancelDraw } from '#server/commands/draws/cancel-draw.ts'
+import { wrap } from '#server/http/pieces/card-svg.ts'
 import { goOn } from '#server/jobs/crash-points.ts'
 import { settleDraw } from '#server/jobs/settle-draw.ts'
 import { draw } from '#server/store/schema/draw.ts'
@@ -183,5 +184,21 @@ describe('the feed', () => {
     expect(only(feed, 'updated')).toMatch(/Z$/)
     const pending = await site.organisation('pending')
     await get(`/organisations/${pending.slug}/feed.atom`).expect(404)
+  })
+})
+
+describe('lines of the picture', () => {
+  it('break at spaces, inside words that are too long, and say where words were left out', () => {
+    expect(wrap('Bells and ropes', 100, 3)).toEqual(['Bells and ropes'])
+    expect(wrap('', 100, 3)).toEqual([])
+    const broken = wrap('Bells and ropes', 6, 3)
+    expect(broken.join(' ')).toBe('Bells and ropes')
+    expect(broken.length).toBeGreaterThan(1)
+    const long = wrap('W'.repeat(40), 10, 9)
+    expect(long.join('')).toBe('W'.repeat(40))
+    for (const line of long) expect(line.length).toBeLessThanOrEqual(10)
+    const cut = wrap('one two three four five six seven eight nine ten', 8, 2)
+    expect(cut).toHaveLength(2)
+    expect(cut[1]).toMatch(/^\S.*…$/)
   })
 })
