@@ -28,9 +28,9 @@ export class CheckPage {
       .setInputFiles(files.map(({ name, bytes }) => ({ name, mimeType: '', buffer: Buffer.from(bytes) })))
   }
 
-  /** Lets the development chain pass, with which every demonstration is drawn. */
-  allowDevelopmentChain(): Promise<void> {
-    return this.page.getByLabel('Let the development chain pass').check()
+  /** Lets the development chain and timestamps pass, with which every demonstration is drawn. */
+  allowDemonstration(): Promise<void> {
+    return this.page.getByLabel('This is a demonstration: let it pass').check()
   }
 
   /** Runs the check to its end. */

@@ -72,7 +72,7 @@ test('a stranger checks a draw of 5,000 entrants in the page', async ({ page }) 
   await check.run()
   await check.expectFailed(3, /^seal\.json sources\.beacon/, 'development-chain')
 
-  await check.allowDevelopmentChain()
+  await check.allowDemonstration()
   await check.run()
   await check.expectHeld()
   await expect(check.verdict).toContainText('Signed by the key whose fingerprint was given.')
@@ -108,7 +108,7 @@ test('a stranger checks a draw of 5,000 entrants in the page', async ({ page }) 
 test('a tampered archive is refused, and the place is named', async ({ page }) => {
   await page.goto(`/draws/${slug}/check`, { waitUntil: 'networkidle' })
   const check = new CheckPage(page)
-  await check.allowDevelopmentChain()
+  await check.allowDemonstration()
 
   const oneTicketMore = tampered((members) => {
     const lines = text(members['entries.csv']).split('\n')
@@ -172,7 +172,7 @@ test('the saved page checks the archive and receipts with the network off', asyn
     await check.start.click()
     await expect(page.getByText('Choose the archive first.')).toBeVisible()
 
-    await check.allowDevelopmentChain()
+    await check.allowDemonstration()
     const { receipt, leaf, tickets } = receiptOf(unzipSync(archive), 17)
     await check.give({ name: 'proof.zip', bytes: archive }, { name: 'mine.json', bytes: utf8(receipt) })
     await check.run()
@@ -219,7 +219,7 @@ test('the saved page checks the archive and receipts with the network off', asyn
 test('zips with tricks are refused by name, and the page goes on', async ({ page }) => {
   await page.goto(`/draws/${slug}/check`, { waitUntil: 'networkidle' })
   const check = new CheckPage(page)
-  await check.allowDevelopmentChain()
+  await check.allowDemonstration()
   const members = Object.entries(unzipSync(archive)).map(([name, bytes]) => ({ name, bytes }))
   const only = (name: string) => members.filter((member) => member.name === name)
   const tricks = [
@@ -263,7 +263,7 @@ test('a check can be stopped in the middle and begun again', async ({ page }) =>
   })
   await page.goto(`/draws/${slug}/check`, { waitUntil: 'networkidle' })
   const check = new CheckPage(page)
-  await check.allowDevelopmentChain()
+  await check.allowDemonstration()
   await check.start.click()
   await expect(page.getByRole('progressbar', { name: 'Fetching the archive' })).toBeVisible()
   await expectAccessible(page, 'the check under way')
@@ -273,6 +273,74 @@ test('a check can be stopped in the middle and begun again', async ({ page }) =>
   slow = false
   await check.run()
   await check.expectHeld()
+})
+
+test('the log is compared with what this browser saw of it, and a rewound one is shown to be so', async ({ page }) => {
+  await page.goto(`/draws/${slug}/check`, { waitUntil: 'networkidle' })
+  const check = new CheckPage(page)
+  await check.allowDemonstration()
+  const log = page.locator('section.part').filter({ has: page.getByRole('heading', { name: 'The site’s log' }) })
+  await check.run()
+  await check.expectHeld()
+  await expect(log).toContainText(/first checkpoint|only grew|stands as it was/)
+  await expect(log.locator('.notice')).toHaveCount(0)
+  const kept = () => page.evaluate(() => localStorage.getItem('evenpenny-log-head') ?? '')
+  await expect.poll(kept).toMatch(/^[^\n]+\/log\n\d+\n/)
+
+  await page.reload({ waitUntil: 'networkidle' })
+  await check.allowDemonstration()
+  await check.run()
+  await expect(log).toContainText(/only grew|stands as it was/)
+
+  // As if this browser had seen a longer log before.
+  const longer = (await kept()).replace(/\n\d+\n/, '\n999999999\n')
+  await page.evaluate((note) => localStorage.setItem('evenpenny-log-head', note), longer)
+  await check.run()
+  await expect(log.locator('.notice')).toContainText('was wound back: it showed 999999999 entries before')
+  await check.expectHeld()
+  expect(await kept(), 'what was seen stays remembered').toBe(longer)
+})
+
+test('files can be dropped, and every state of the check is in bounds and accessible', async ({ browser }) => {
+  test.setTimeout(4 * 60_000)
+  const damaged = Buffer.from(archive.subarray(0, archive.length - 5)).toString('base64')
+  for (const [width, colorScheme] of [
+    [360, 'dark'],
+    [1440, 'light'],
+    [360, 'light'],
+    [1440, 'dark'],
+  ] as const) {
+    const context = await browser.newContext({ viewport: { width, height: 900 }, colorScheme })
+    const page = await context.newPage()
+    const where = `${width} px, ${colorScheme}`
+    await page.goto(`${stack().site}/check.html`)
+    const check = new CheckPage(page)
+    await expectAccessible(page, `the page before a check, ${where}`)
+    const dropped = await page.evaluateHandle((base64) => {
+      const bytes = Uint8Array.from(atob(base64), (character) => character.charCodeAt(0))
+      const transfer = new DataTransfer()
+      transfer.items.add(new File([bytes], 'dropped.zip'))
+      transfer.items.add(new File(['{"kind":"receipt"}'], 'dropped.json'))
+      transfer.items.add(new File(['?'], 'a-file-whose-name-is-rather-long-and-has-nowhere-to-break.txt'))
+      return transfer
+    }, damaged)
+    await page.locator('.file-drop').dispatchEvent('drop', { dataTransfer: dropped })
+    await expect(page.getByText('To be checked: dropped.zip')).toBeVisible()
+    await check.run()
+    await check.expectFailed(1, 'the archive', 'not-a-zip')
+    await expect(page.locator('.check-receipts')).toContainText('dropped.json was not examined')
+    await expectAccessible(page, `a check that fails, ${where}`)
+
+    await check.give({ name: 'proof.zip', bytes: archive })
+    await check.allowDemonstration()
+    await check.run()
+    await check.expectHeld()
+    for (const step of [1, 4, 9]) await check.step(step).locator('summary').click()
+    await page.locator('.check-picks > li').first().getByRole('button').click()
+    await expect(page.locator('.ladder')).toBeVisible()
+    await expectAccessible(page, `a check that holds, ${where}`)
+    await context.close()
+  }
 })
 
 /** The short proof of a leaf, made from the public list by this test's own tree (PROTOCOL sections 2 and 10). */

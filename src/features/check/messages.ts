@@ -12,7 +12,12 @@ export type GivenArchive =
   | { readonly kind: 'address'; readonly url: string }
 
 export interface StartOptions {
-  readonly allowDevelopmentChain: boolean
+  /** Lets the development chain and the development authority's timestamps pass, whose secrets are public. */
+  readonly allowDevelopment: boolean
+  /** Texts with certificates, in PEM, of timestamp authorities that the reader trusts; each with its file's name. */
+  readonly authorities: readonly { readonly name: string; readonly pem: string }[]
+  /** Keys of outside witnesses of the log that the reader trusts, as C2SP signed-note writes them. */
+  readonly witnesses: readonly string[]
   /** 64 lower-case hex digits, or null where there is nothing to compare with. */
   readonly expectedKey: string | null
   /** Whether the site's log is to be asked, and the note of it that this browser remembers. */

@@ -13,9 +13,12 @@ export interface SortedFiles {
   readonly archive: File | null
   /** Receipts and short proofs. */
   readonly receipts: readonly File[]
+  /** Certificates in PEM. */
+  readonly certificates: readonly File[]
   readonly refused: readonly RefusedFile[]
 }
 
+const MOST_CERTIFICATE_BYTES = 2 ** 18
 /** Receipts that are taken at once. */
 const MOST_RECEIPTS = 200
 
@@ -23,6 +26,7 @@ const MOST_RECEIPTS = 200
 export async function sortFiles(files: readonly File[]): Promise<SortedFiles> {
   let archive: File | null = null
   const receipts: File[] = []
+  const certificates: File[] = []
   const refused: RefusedFile[] = []
   for (const file of files) {
     const kind = await kindOf(file)
@@ -33,16 +37,18 @@ export async function sortFiles(files: readonly File[]): Promise<SortedFiles> {
     else if (kind === 'archive' && archive !== null)
       refuse(`One archive is checked at a time, and ${archive.name} is it.`)
     else if (kind === 'archive') archive = file
+    else if (kind === 'certificate' && file.size <= MOST_CERTIFICATE_BYTES) certificates.push(file)
+    else if (kind === 'certificate') refuse(`It is ${formatBytes(file.size)} long, and no certificate is so long.`)
     else if (kind === 'other') refuse('It is neither a proof archive (a zip) nor a receipt or short proof (JSON).')
     else if (file.size > MAX_RECEIPT)
       refuse(`It is ${formatBytes(file.size)} long, and no receipt is longer than 1 MB.`)
     else if (receipts.length >= MOST_RECEIPTS) refuse(`${MOST_RECEIPTS} receipts are taken at a time.`)
     else receipts.push(file)
   }
-  return { archive, receipts, refused }
+  return { archive, receipts, certificates, refused }
 }
 
-type Kind = 'archive' | 'receipt' | 'other' | 'empty' | 'unreadable'
+type Kind = 'archive' | 'receipt' | 'certificate' | 'other' | 'empty' | 'unreadable'
 
 async function kindOf(file: File): Promise<Kind> {
   if (file.size === 0) return 'empty'
@@ -56,6 +62,7 @@ async function kindOf(file: File): Promise<Kind> {
   if (head === null) return 'unreadable'
   if (head[0] === 0x50 && head[1] === 0x4b) return 'archive'
   if (/\.zip$/i.test(file.name)) return 'archive'
+  if (/\.(pem|crt|cer)$/i.test(file.name) || (head[0] === 0x2d && head[1] === 0x2d)) return 'certificate'
   // A receipt begins with a brace; one that is damaged is still to be refused as a receipt.
   return head[0] === 0x7b || /\.json$/i.test(file.name) ? 'receipt' : 'other'
 }

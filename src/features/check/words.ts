@@ -1,4 +1,4 @@
-import { countOf } from '#src/ui/format-number.ts'
+import { capitalise, countOf } from '#src/ui/format-number.ts'
 import type { Phase, StepState } from './check-state.ts'
 
 /** What each step does, for people; the exact figures stand below it. A step that is new here has only its title. */
@@ -52,18 +52,15 @@ export function phaseWords(phase: Phase, failedStep: number | null): string {
 }
 
 /**
- * A sentence of the verdict as a heading and the rest: "The arithmetic holds" and why; "Sealed in time: not shown" and
- * what would show it. A sentence of another make is all rest.
+ * A sentence of the verdict as a heading and the rest: "The arithmetic holds" and why; "Sealed in time: shown" and by
+ * whom, or "not shown" and what would show it. A sentence of another make is all rest.
  */
 export function headAndRest(sentence: string): { readonly head: string | null; readonly rest: string } {
-  const sealed = /^(Sealed in time: (?:not shown|shown by [^.]*?))\. (.*)$/s.exec(sentence)
-  const match = sealed ?? /^(The arithmetic holds): (.*)$/s.exec(sentence)
-  if (!match) {
-    const whole = /^(Sealed in time: .*?)\.?$/s.exec(sentence)
-    return whole ? { head: whole[1] ?? sentence, rest: '' } : { head: null, rest: sentence }
-  }
+  const match =
+    /^(Sealed in time: (?:not )?shown)[.:]? (.*)$/s.exec(sentence) ?? /^(The arithmetic holds): (.*)$/s.exec(sentence)
+  if (!match) return { head: null, rest: sentence }
   const [, head = '', rest = ''] = match
-  return { head, rest: rest.charAt(0).toUpperCase() + rest.slice(1) }
+  return { head, rest: capitalise(rest) }
 }
 
 /** How long it took: in milliseconds below a second, to a tenth of a second below ten. */

@@ -21,7 +21,7 @@ class FakeWorker implements WorkerLike {
 const START: Extract<ToWorker, { kind: 'start' }> = {
   kind: 'start',
   archive: { kind: 'address', url: '/proof.zip' },
-  options: { allowDevelopmentChain: false, expectedKey: null, log: null },
+  options: { allowDevelopment: false, authorities: [], witnesses: [], expectedKey: null, log: null },
 }
 const progress: FromWorker = { kind: 'event', event: { kind: 'progress', step: 1, done: 1, total: 9 } }
 const held = { kind: 'held' } as FromWorker

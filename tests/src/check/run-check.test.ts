@@ -9,7 +9,13 @@ import { answer, runCheck } from '#src/features/check/worker/run-check.ts'
 import { testArchive } from '#tests/support/archive/test-draw.ts'
 import { rawZip } from '#tests/support/archive/zip-patch.ts'
 
-const OPTIONS: StartOptions = { allowDevelopmentChain: true, expectedKey: null, log: null }
+const OPTIONS: StartOptions = {
+  allowDevelopment: true,
+  authorities: [],
+  witnesses: [],
+  expectedKey: null,
+  log: null,
+}
 
 async function check(options = OPTIONS, ...args: Parameters<typeof testArchive>) {
   const { members, receipt } = await testArchive(...args)
@@ -68,7 +74,7 @@ describe('the check in a worker', () => {
     const { told, checked } = await check({ ...OPTIONS, expectedKey: 'ab'.repeat(32) }, 'beacon')
     expect(told.at(-1)).toMatchObject({ kind: 'failed', failure: { step: 2, code: 'key-not-the-expected' } })
     expect(checked).toBeNull()
-    const unticked = await check({ ...OPTIONS, allowDevelopmentChain: false }, 'beacon')
+    const unticked = await check({ ...OPTIONS, allowDevelopment: false }, 'beacon')
     expect(unticked.told.at(-1)).toMatchObject({ kind: 'failed', failure: { step: 3, code: 'development-chain' } })
   })
 
@@ -151,5 +157,20 @@ describe('fetching an archive', () => {
     ],
   ])('says in plain words: %s', async (_what, request, words) => {
     await expect(fetchArchive('/proof.zip', tell, request)).rejects.toThrow(words)
+  })
+})
+
+describe('whom the reader trusts', () => {
+  const stopped = async (change: Partial<StartOptions>) =>
+    (await check({ ...OPTIONS, ...change }, 'beacon')).told.at(-1)
+
+  it('is refused by name where it cannot be read, before anything is checked', async () => {
+    const junk = await stopped({ authorities: [{ name: 'authority.pem', pem: 'no certificate' }] })
+    expect(junk).toEqual({ kind: 'stopped', reason: expect.stringContaining('authority.pem holds no certificate') })
+    const broken = '-----BEGIN CERTIFICATE-----\nMAA=\n-----END CERTIFICATE-----\n'
+    const damaged = await stopped({ authorities: [{ name: 'authority.pem', pem: broken }] })
+    expect(damaged).toEqual({ kind: 'stopped', reason: expect.stringContaining('authority.pem cannot be read') })
+    const key = await stopped({ witnesses: ['quayside.example+00000000+abc'] })
+    expect(key).toEqual({ kind: 'stopped', reason: expect.stringContaining('quayside.example+00000000+abc') })
   })
 })

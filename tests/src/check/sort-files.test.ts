@@ -13,7 +13,7 @@ describe('files dropped on the check', () => {
     const zip = file('saved-without-ending', 'PK\u0003\u0004rest')
     const receipt = file('receipt', '{"kind":"receipt"}')
     const sorted = await sortFiles([receipt, zip])
-    expect(sorted).toEqual({ archive: zip, receipts: [receipt], refused: [] })
+    expect(sorted).toEqual({ archive: zip, receipts: [receipt], certificates: [], refused: [] })
   })
 
   it('still takes a damaged archive and a damaged receipt, so that the check can say what is wrong', async () => {
@@ -44,6 +44,14 @@ describe('files dropped on the check', () => {
     expect(refused.map(({ name }) => name)).toEqual(['holiday.jpg', 'long.json', 'huge.zip', 'two.zip', 'folder'])
     expect(refused[1]?.why).toBe('It is 52.4 MB long, and no receipt is longer than 1 MB.')
     expect(refused[3]?.why).toContain('one.zip is it')
+  })
+
+  it('knows a certificate by its first line or its name, and refuses one that is far too long', async () => {
+    const pem = file('authority', '-----BEGIN CERTIFICATE-----')
+    const crt = file('authority.crt', '\u0030\u0082')
+    const { certificates, refused } = await sortFiles([pem, crt, long('long.pem', '-----', 2 ** 24)])
+    expect(certificates).toEqual([pem, crt])
+    expect(refused.map(({ name }) => name)).toEqual(['long.pem'])
   })
 
   it('takes a file of exactly the longest receipt, and not a byte more', async () => {

@@ -28,13 +28,9 @@ describe('words of the check', () => {
     expect(parted.slice(0, 2).map(({ head }) => head)).toEqual(['The arithmetic holds', 'Sealed in time: not shown'])
     for (const { rest } of parted) expect(rest).toMatch(/^[A-Z]/)
     expect(parted.slice(2).every(({ head }) => head === null)).toBe(true)
-    expect(headAndRest('Sealed in time: shown by a timestamp of Quayside Time. It is dated before the draw.')).toEqual({
-      head: 'Sealed in time: shown by a timestamp of Quayside Time',
-      rest: 'It is dated before the draw.',
-    })
-    expect(headAndRest('Sealed in time: shown by two witnesses.')).toEqual({
-      head: 'Sealed in time: shown by two witnesses',
-      rest: '',
+    expect(headAndRest('Sealed in time: shown by the timestamp of Quayside Time, over the seal ab.')).toEqual({
+      head: 'Sealed in time: shown',
+      rest: 'By the timestamp of Quayside Time, over the seal ab.',
     })
   })
 

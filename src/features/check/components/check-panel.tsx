@@ -1,7 +1,7 @@
-import { type FormEvent, useState } from 'react'
+import { type FormEvent, Fragment, useState } from 'react'
 import { Announcer } from '#src/ui/announcer.tsx'
 import { Button, TextButton } from '#src/ui/button.tsx'
-import { TextField, TickField } from '#src/ui/field.tsx'
+import { TextArea, TextField, TickField } from '#src/ui/field.tsx'
 import { formatBytes } from '#src/ui/format-number.ts'
 import { Notice } from '#src/ui/notice.tsx'
 import { Part } from '#src/ui/page.tsx'
@@ -9,6 +9,7 @@ import type { WorkerLike } from '../check-run.ts'
 import { shareDone } from '../check-state.ts'
 import { readFingerprint } from '../fingerprint.ts'
 import { rememberedHead } from '../log-memory.ts'
+import type { StartOptions } from '../messages.ts'
 import { type RefusedFile, sortFiles } from '../sort-files.ts'
 import { useCheck } from '../use-check.ts'
 import { phaseWords, printable } from '../words.ts'
@@ -26,7 +27,7 @@ export interface CheckPanelProps {
   readonly archive: { readonly url: string; readonly bytes: number } | null
   /** The fingerprint that this page publishes; null where it knows none. */
   readonly publishedKey: string | null
-  /** Whether the development chain may be let pass at all. */
+  /** Whether a demonstration may be let pass at all. */
   readonly demo: boolean
   /** Whether the site's log is to be asked as well: only on the site itself. */
   readonly watchesLog: boolean
@@ -37,7 +38,9 @@ export function CheckPanel({ createWorker, archive, publishedKey, demo, watchesL
   const control = useCheck(createWorker)
   const { view } = control
   const [fingerprint, setFingerprint] = useState(publishedKey ?? '')
-  const [allowDevelopmentChain, setAllow] = useState(false)
+  const [allowDevelopment, setAllow] = useState(false)
+  const [witnesses, setWitnesses] = useState('')
+  const [authorities, setAuthorities] = useState<StartOptions['authorities']>([])
   const [file, setFile] = useState<File | null>(null)
   const [refused, setRefused] = useState<readonly RefusedFile[]>([])
   const [fault, setFault] = useState<string | undefined>()
@@ -56,6 +59,10 @@ export function CheckPanel({ createWorker, archive, publishedKey, demo, watchesL
       setFile(sorted.archive)
       setMissing(false)
     }
+    const given = await Promise.all(
+      sorted.certificates.map(async (certificate) => ({ name: certificate.name, pem: await certificate.text() })),
+    )
+    if (given.length > 0) setAuthorities((before) => [...before, ...given])
     await control.giveReceipts(sorted.receipts)
   }
   function start(event: FormEvent) {
@@ -66,7 +73,13 @@ export function CheckPanel({ createWorker, archive, publishedKey, demo, watchesL
     setMissing(given === null)
     if ('error' in read || given === null) return
     const log = watchesLog ? { remembered: rememberedHead() } : null
-    control.start(given, { allowDevelopmentChain, expectedKey: read.key, log })
+    control.start(given, {
+      allowDevelopment,
+      authorities,
+      witnesses: witnesses.split(/\s+/).filter((key) => key !== ''),
+      expectedKey: read.key,
+      log,
+    })
   }
 
   return (
@@ -91,10 +104,10 @@ export function CheckPanel({ createWorker, archive, publishedKey, demo, watchesL
           />
           {demo ? (
             <TickField
-              name="development-chain"
-              label="Let the development chain pass"
-              hint="Demonstrations are drawn with a beacon whose secret is public, so anybody could choose their outcome. The verdict will say so."
-              checked={allowDevelopmentChain}
+              name="development"
+              label="This is a demonstration: let it pass"
+              hint="Demonstrations use a beacon and a timestamp authority whose secrets are public, so anybody could choose their outcome. The verdict will say so."
+              checked={allowDevelopment}
               onChange={(event) => setAllow(event.target.checked)}
             />
           ) : null}
@@ -117,6 +130,37 @@ export function CheckPanel({ createWorker, archive, publishedKey, demo, watchesL
               </TextButton>
             </p>
           ) : null}
+          {authorities.length > 0 ? (
+            <p>
+              Trusted for timestamps:{' '}
+              {authorities.map(({ name }, index) => (
+                <Fragment key={index}>
+                  <code>{printable(name)}</code>,{' '}
+                </Fragment>
+              ))}
+              because you gave {authorities.length === 1 ? 'its certificate' : 'their certificates'}.{' '}
+              <TextButton onClick={() => setAuthorities([])}>Trust none</TextButton>
+            </p>
+          ) : null}
+          <details className="fold">
+            <summary>Who shows that it was sealed in time</summary>
+            <div className="form mt-unit">
+              <p className="note measure">
+                Nobody is trusted for this unless you say so. Give the certificate of a timestamp authority as a file
+                above (PEM), and the keys of outside witnesses of the log here, both from a place other than this site.
+              </p>
+              <TextArea
+                name="witnesses"
+                label="Keys of witnesses"
+                hint="One on a line, written as name, number and key with plus signs between."
+                value={witnesses}
+                onChange={(event) => setWitnesses(event.target.value)}
+                autoComplete="off"
+                autoCapitalize="none"
+                spellCheck={false}
+              />
+            </div>
+          </details>
           {refused.length > 0 ? (
             <Notice title="Not taken" fault>
               <ul className="dashes">

@@ -1,3 +1,4 @@
+import { useEffect } from 'react'
 import { Ladder, Winner } from '#src/features/ladder/ladder.tsx'
 import { awardInSentence, awardWords } from '#src/lib/award-words.ts'
 import { Button } from '#src/ui/button.tsx'
@@ -51,9 +52,16 @@ export function PicksPart({ control }: { readonly control: CheckControl }) {
   )
 }
 
+const WALK = 'check-walk'
+
 type WalkProps = { readonly row: PickRow; readonly coins: NonNullable<CheckControl['view']['walk']>['coins'] }
 
 function Walk({ row, coins }: WalkProps) {
+  const arrived = coins !== null
+  // The coins stand below a long list: whoever asked for them is taken there.
+  useEffect(() => {
+    if (arrived) document.getElementById(WALK)?.focus()
+  }, [arrived, row.pick])
   if (coins === null) {
     return (
       <Part title={awardWords(row.award)}>
@@ -66,7 +74,7 @@ function Walk({ row, coins }: WalkProps) {
   return (
     <>
       <Part title={`${awardWords(row.award)}, coin by coin`}>
-        <p className="measure">
+        <p className="measure" id={WALK} tabIndex={-1}>
           {countOf(row.remaining, 'ticket')} {row.remaining === 1 ? 'was' : 'were'} in.{' '}
           {coins.length === 0
             ? 'Only one entrant was left, so no coin was needed.'

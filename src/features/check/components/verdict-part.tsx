@@ -85,9 +85,7 @@ function Failed({ failure, title }: { readonly failure: CheckFailure; readonly t
       <Notice title={`Step ${failure.step} fails: ${title.charAt(0).toLowerCase()}${title.slice(1)}`} fault>
         <FailurePlace failure={failure} />
         {failure.code === 'development-chain' ? (
-          <p>
-            This is a demonstration. To check the rest of it, tick “Let the development chain pass” and start again.
-          </p>
+          <p>This is a demonstration. To check the rest of it, tick “This is a demonstration” and start again.</p>
         ) : null}
         <p>
           The arithmetic does not hold, or cannot be read. Nothing behind this step was looked at. Fetch the archive

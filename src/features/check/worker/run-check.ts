@@ -6,6 +6,7 @@ import { CheckedArchive } from './checked-draw.ts'
 import type { BrowserTools } from './fast-tools.ts'
 import { FetchError, fetchArchive } from './fetch-archive.ts'
 import { inflateInBrowser } from './native-inflate.ts'
+import { checkOptions, TrustError } from './trust.ts'
 
 type Post = (message: FromWorker) => void
 type Start = Extract<ToWorker, { readonly kind: 'start' }>
@@ -21,16 +22,17 @@ export async function runCheck(start: Start, machine: BrowserTools, post: Post):
   const { tools, engine } = machine
   const began = tools.now()
   const telling = seldom(tools.now)
+  const { log } = start.options
   try {
+    const options = checkOptions(tools.sha256, start.options)
     const blob = await blobOf(start.archive, (done, total) => {
       if (done === total || telling()) post({ kind: 'fetched', done, total })
     })
     const open = () => openZip(blobSource(blob), { inflate: inflateInBrowser })
-    const { allowDevelopmentChain, expectedKey, log } = start.options
     const report = await checkArchive({
       open,
       tools,
-      options: { allowDevelopmentChain, ...(expectedKey === null ? {} : { expectedKey }) },
+      options,
       onEvent: (event) => {
         if (!isMidway(event) || telling()) post({ kind: 'event', event })
       },
@@ -94,7 +96,7 @@ function seldom(now: () => number): () => boolean {
 }
 
 function reasonOf(error: unknown): string {
-  if (error instanceof FetchError) return error.message
+  if (error instanceof FetchError || error instanceof TrustError) return error.message
   const name = error instanceof Error ? error.name : ''
   if (name === 'NotReadableError' || name === 'NotFoundError') {
     return 'The file could not be read to its end. It may have been changed or moved meanwhile: choose it again.'
