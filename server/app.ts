@@ -12,11 +12,13 @@ import { mountPublicApi } from '#server/http/endpoints/public-api.ts'
 import { createRegistry } from '#server/http/endpoints/registry.ts'
 import { mountCheckPage } from '#server/http/files/check-page.ts'
 import { mountDrawFiles } from '#server/http/files/draw-files.ts'
+import { mountEntryFiles } from '#server/http/files/entry-files.ts'
 import { LockedArchives } from '#server/http/files/locked-archives.ts'
 import { mountLogFiles } from '#server/http/files/log-files.ts'
 import { mountSiteFiles } from '#server/http/files/site-files.ts'
 import { mountStaticFiles } from '#server/http/files/static-files.ts'
 import { createHandlers } from '#server/http/handlers/all.ts'
+import { mountPieces } from '#server/http/pieces/mount-pieces.ts'
 import { refuseCrossSiteWrites } from '#server/http/middleware/cross-site.ts'
 import { errorHandler, noSuchEndpoint } from '#server/http/middleware/errors.ts'
 import { openToOtherSites } from '#server/http/middleware/open-reads.ts'
@@ -25,9 +27,9 @@ import { securityHeaders } from '#server/http/middleware/security-headers.ts'
 import { mountPages } from '#server/http/pages/mount-pages.ts'
 import { PageCache } from '#server/http/pages/page-cache.ts'
 import type { Renderer } from '#server/http/pages/renderer.ts'
-import { mountPieces } from '#server/http/pieces/mount-pieces.ts'
 import { createProblemOf } from '#server/http/problem-of.ts'
 import { createSessions, signedInPersonId } from '#server/http/session/sessions.ts'
+import { createEntryGuard, type EntryLimits } from '#server/http/session/entry-limits.ts'
 import { createSignInGuard, type SignInLimits } from '#server/http/session/sign-in-limits.ts'
 import { checkEveryRouteHasItsRule } from '#server/http/routes.ts'
 import type { Services } from '#server/services.ts'
@@ -47,6 +49,7 @@ export interface SiteParts {
   readonly build: string
   readonly version: string
   readonly limits?: SignInLimits
+  readonly entryLimits?: EntryLimits
   /** Further middleware before everything else, for development. */
   readonly before?: (app: Express) => void
 }
@@ -79,6 +82,7 @@ export function createSite(parts: SiteParts): SiteApp {
   const archives = new LockedArchives(services.store)
   const unexpected = (error: unknown) => logger.error({ err: error }, 'unexpected')
   const problemOf = createProblemOf(unexpected)
+  const entryGuard = createEntryGuard(services.pool, parts.entryLimits)
   const registry = createRegistry(
     allEndpoints,
     endpointRules,
@@ -87,6 +91,7 @@ export function createSite(parts: SiteParts): SiteApp {
       site: config,
       passwords: parts.passwords,
       guard: createSignInGuard(services.pool, parts.limits),
+      entryGuard,
     }),
     (on, key) => findResource(services.db, on, key),
   )
@@ -109,6 +114,7 @@ export function createSite(parts: SiteParts): SiteApp {
   mountSiteFiles(app, { db: services.db, origin: config.origin, version: parts.version })
   mountLogFiles(app, services)
   mountDrawFiles(app, { db: services.db, keys: services.signing, archives })
+  mountEntryFiles(app, services, entryGuard)
   mountPieces(app, services)
   mountPublicApi(app, registry, { origin: config.origin, version: parts.version })
 

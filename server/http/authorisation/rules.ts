@@ -38,6 +38,16 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   getResultV1: visit,
   listTranscriptV1: visit,
 
+  // Whoever has a private link or a slip's code may use it: the handlers look it up, and count what fits nobody.
+  getEntry: visit,
+  getEntryPicks: visit,
+  getEntryWalk: visit,
+  chooseAnnouncement: visit,
+  askCorrection: visit,
+  noteReceiptOpened: visit,
+  openEntry: visit,
+  requestEntryLink: visit,
+
   listOfficeDraws: on('organisation', 'list-draws'),
   createDraw: on('organisation', 'edit'),
   getOfficeDraw: on('draw', 'read-draw'),
@@ -61,6 +71,11 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   applyImport: on('draw', 'edit'),
   discardImport: on('draw', 'edit'),
   listImports: on('draw', 'read-entrants'),
+  sendEntryLink: on('draw', 'edit'),
+  printSlips: on('draw', 'edit'),
+  listCorrections: on('draw', 'read-entrants'),
+  // What was asked after the seal is answered by a promoter alone: the command sees to it.
+  answerCorrection: on('draw', 'edit'),
   nameWitness: on('draw', 'run'),
   removeWitness: on('draw', 'run'),
   stateAsWitness: on('draw', 'witness'),

@@ -1,6 +1,7 @@
 import type { Handled } from '#server/http/endpoints/registry.ts'
 import { administratorHandlers } from '#server/http/handlers/administrator.ts'
 import { entrantHandlers } from '#server/http/handlers/entrants.ts'
+import { entryHandlers } from '#server/http/handlers/entries.ts'
 import { logHandlers } from '#server/http/handlers/log.ts'
 import { officeDrawHandlers } from '#server/http/handlers/office-draws.ts'
 import type { HandlerParts } from '#server/http/handlers/parts.ts'
@@ -18,6 +19,7 @@ export function createHandlers(parts: HandlerParts): Handled[] {
     ...publicApiHandlers(parts),
     ...officeDrawHandlers(parts),
     ...entrantHandlers(parts),
+    ...entryHandlers(parts),
     ...peopleHandlers(parts),
     ...administratorHandlers(parts),
   ]

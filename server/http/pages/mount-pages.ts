@@ -1,11 +1,12 @@
 import { Writable } from 'node:stream'
-import type { Express, Request, Response as ExpressResponse } from 'express'
+import type { Express, Request, RequestHandler, Response as ExpressResponse } from 'express'
 import { type Actor, NOBODY } from '#server/http/authorisation/actor.ts'
 import { decide, type Rule } from '#server/http/authorisation/decide.ts'
 import { pageRules } from '#server/http/authorisation/page-rules.ts'
 import type { RequestContext } from '#server/http/endpoints/context.ts'
 import type { ContextOf } from '#server/http/endpoints/mount.ts'
 import type { Registry } from '#server/http/endpoints/registry.ts'
+import { keepPrivate } from '#server/http/middleware/private-pages.ts'
 import { newNonce, nonceOf } from '#server/http/middleware/security-headers.ts'
 import { inProcessClient } from '#server/http/pages/in-process-client.ts'
 import { KeptPage } from '#server/http/pages/kept-page.ts'
@@ -40,10 +41,14 @@ const KEPT: ReadonlySet<string> = new Set([
   '/log',
 ])
 
+/** Pages whose address is a secret, and the one that leads there. */
+const SECRET: ReadonlySet<string> = new Set(['/entry', '/entry/:token'])
+const openly: RequestHandler = (_request, _response, next) => next()
+
 /** Puts every page onto the application, the page for unknown addresses last. */
 export function mountPages(app: Express, parts: PageParts): void {
   for (const [path, rule] of Object.entries(pageRules)) {
-    app.get(path, async (request, response) => {
+    app.get(path, SECRET.has(path) ? keepPrivate : openly, async (request, response) => {
       if (KEPT.has(path) && parts.cache.concerns(request)) await sendKept(parts, request, response)
       else await sendOwn(parts, rule, request, response)
     })
@@ -99,7 +104,10 @@ async function sendOwn(parts: PageParts, rule: Rule, request: Request, response:
     return
   }
   for (const [name, value] of Object.entries(rendered.headers)) response.setHeader(name, value)
-  response.setHeader('Cache-Control', isPrivate(rule, context.actor) ? 'no-store' : 'private, no-cache')
+  // A page whose address is a secret has said already that nobody keeps it.
+  if (response.getHeader('Cache-Control') !== 'no-store') {
+    response.setHeader('Cache-Control', isPrivate(rule, context.actor) ? 'no-store' : 'private, no-cache')
+  }
   response.vary('Cookie')
   response.status(decision.allowed ? rendered.status : decision.status)
   if (request.method === 'HEAD') response.end()

@@ -39,17 +39,7 @@ export interface SignInGuard {
 }
 
 export function createSignInGuard(pool: Pool, limits: SignInLimits = DEFAULT_LIMITS): SignInGuard {
-  const limiter = (prefix: string, limit: Limit) =>
-    new RateLimiterPostgres({
-      storeClient: pool,
-      storeType: 'pool',
-      tableName: 'rate_limit',
-      tableCreated: true,
-      keyPrefix: prefix,
-      points: limit.tries,
-      duration: limit.seconds,
-      clearExpiredByTimeout: false,
-    })
+  const limiter = (prefix: string, limit: Limit) => createLimiter(pool, prefix, limit)
   const address = limiter('sign-in-address', limits.byAddress)
   const account = limiter('sign-in-account', limits.byAccount)
   const resetAccount = limiter('reset-account', limits.resets)
@@ -76,11 +66,26 @@ export function createSignInGuard(pool: Pool, limits: SignInLimits = DEFAULT_LIM
   }
 }
 
+/** A count in the table of counts: so many tries in so many seconds for each key. */
+export function createLimiter(pool: Pool, prefix: string, limit: Limit): RateLimiterPostgres {
+  return new RateLimiterPostgres({
+    storeClient: pool,
+    storeType: 'pool',
+    tableName: 'rate_limit',
+    tableCreated: true,
+    keyPrefix: prefix,
+    points: limit.tries,
+    duration: limit.seconds,
+    clearExpiredByTimeout: false,
+  })
+}
+
 /** The wait that a refused try was told, in whole seconds: the `Retry-After` of its response (RFC 9110, 10.2.3). */
 const waits = new WeakMap<Problem, number>()
 export const retryAfter = (refusal: Problem): number | null => waits.get(refusal) ?? null
 
-async function count(limiter: RateLimiterPostgres, key: string, sentence: string): Promise<void> {
+/** Counts one try. Throws a 429 Problem with this sentence and the wait where there were too many. */
+export async function count(limiter: RateLimiterPostgres, key: string, sentence: string): Promise<void> {
   try {
     await limiter.consume(key)
   } catch (refused) {
@@ -95,6 +100,6 @@ async function count(limiter: RateLimiterPostgres, key: string, sentence: string
 }
 
 /** Addresses of people and of their machines do not lie about in the table of counts. */
-function hashed(text: string): string {
+export function hashed(text: string): string {
   return createHash('sha256').update(text.trim().toLowerCase()).digest('base64url').slice(0, 22)
 }

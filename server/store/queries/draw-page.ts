@@ -4,6 +4,7 @@ import { roundTime } from '#shared/protocol/networks.ts'
 import type { Services } from '#server/services.ts'
 import type { Database } from '#server/store/database.ts'
 import { draw, prize } from '#server/store/schema/draw.ts'
+import { receiptOpening } from '#server/store/schema/entry.ts'
 import { organisation } from '#server/store/schema/people.ts'
 import { archive, result, settling } from '#server/store/schema/result.ts'
 import { dateOf, instantOf, instantOrNull } from '#server/time/instants.ts'
@@ -71,6 +72,7 @@ export async function getDraw({ db, clock }: Reading, slug: string): Promise<Dra
     drawnAt: instantOrNull(row.drawnAt),
     witnesses,
     seal: inForce ? presentSeal(inForce) : null,
+    receiptsOpened: inForce ? await receiptsOpenedOf(db, inForce.id) : null,
     replacedSeals: seals.filter((seal) => seal !== inForce).map(presentSeal),
     waiting,
     result: settled,
@@ -113,6 +115,9 @@ export async function getPick(
     next,
   }
 }
+
+const receiptsOpenedOf = (db: Database, sealId: number): Promise<number> =>
+  db.$count(receiptOpening, eq(receiptOpening.sealId, sealId))
 
 export const moneyOf = (minor: number | null, currency: string | null) =>
   minor === null || currency === null ? null : { minor, currency }

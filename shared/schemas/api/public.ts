@@ -138,6 +138,8 @@ export const drawPage = z.object({
   /** The seal in force; replaced ones are in `replacedSeals`, oldest first. */
   seal: sealView.nullable(),
   replacedSeals: z.array(sealView),
+  /** How many receipts of the seal in force were opened before the draw: a number, never whose. Null before the seal. */
+  receiptsOpened: z.int().nullable(),
   /** What the settling waits for, while it waits: in words for the page. */
   waiting: z.object({ kind: z.enum(['beacon-not-yet', 'beacon-unreachable', 'settling']), since: instant }).nullable(),
   result: z

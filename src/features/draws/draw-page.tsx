@@ -114,7 +114,7 @@ function Sealed({ draw }: PartsProps) {
       <SealPart draw={draw} />
       <FixesPart draw={draw} />
       <OddsPart draw={draw} />
-      <AreYouInPart />
+      <AreYouInPart draw={draw} />
       <EarlierSealsPart draw={draw} />
       <PrizesPart draw={draw} />
       <WitnessesPart draw={draw} />
@@ -131,6 +131,7 @@ function Drawn({ draw, arrived }: PartsProps & { readonly arrived: boolean }) {
       <SpreadPart draw={draw} />
       {arrived ? null : <OddsPart draw={draw} />}
       <SettledPart draw={draw} />
+      {arrived ? null : <AreYouInPart draw={draw} />}
       <ExactFiguresPart draw={draw} />
       <CheckPart draw={draw} />
       {arrived ? null : (

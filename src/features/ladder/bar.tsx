@@ -1,10 +1,11 @@
 import { formatNumber } from '#src/ui/format-number.ts'
 import { coinShape, trim, type LadderCoin } from '#shared/sampling/ladder-shape.ts'
 import { sideLabel } from './geometry.ts'
+import type { Strip } from './branch.ts'
 import { barWords } from './words.ts'
 
 /** The tickets still in, split in proportion; the chosen side filled, the other pale. No side is under 3 px. */
-export function Bar({ coin }: { readonly coin: LadderCoin }) {
+export function Bar({ coin, strip }: { readonly coin: LadderCoin; readonly strip?: Strip | undefined }) {
   const shape = coinShape(coin)
   const percent = trim(shape.leftPercent)
   const h = shape.heads ? 'won' : 'lost'
@@ -22,9 +23,26 @@ export function Bar({ coin }: { readonly coin: LadderCoin }) {
           <rect className={`t ${t} least`} x="100%" width="3" height="100%" transform="translate(-3 0)" />
         ) : null}
       </svg>
+      {strip ? <OwnStrip strip={strip} /> : null}
       <Side side="h" won={shape.heads} tickets={shape.left} percent={shape.leftPercent} />
       <Side side="t" won={!shape.heads} tickets={shape.right} percent={100 - shape.leftPercent} />
     </div>
+  )
+}
+
+/** One entrant's own tickets, in ink along the foot of the bar; at least 4 px wide, and never beyond its end. */
+function OwnStrip({ strip }: { readonly strip: Strip }) {
+  if (strip.width === 0) return null
+  const atEnd = strip.x + strip.width > 99
+  return (
+    <svg className="own-strip" width="100%" height="14" aria-hidden="true">
+      {atEnd ? (
+        <rect x="100%" width="4" height="100%" transform="translate(-4 0)" />
+      ) : (
+        <rect x={`${trim(strip.x)}%`} width="4" height="100%" />
+      )}
+      <rect x={`${trim(strip.x)}%`} width={`${trim(strip.width)}%`} height="100%" />
+    </svg>
   )
 }
 

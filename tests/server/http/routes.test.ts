@@ -1,6 +1,7 @@
 import express from 'express'
 import type request from 'supertest'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
+import { DEFAULT_ENTRY_LIMITS } from '#server/http/session/entry-limits.ts'
 import { routesOf } from '#server/http/routes.ts'
 import type { Role } from '#shared/schemas/values.ts'
 import { startWebSite, type WebSite } from '#tests/support/web-site.ts'
@@ -78,6 +79,14 @@ const TABLE: Record<string, readonly [keyof typeof WHO, number]> = {
   'GET /api/v1/seals/:seal': ['everybody', 404],
   'GET /api/v1/seals/:seal/leaves/:leaf': ['everybody', 404],
   'GET /api/v1/openapi.json': ['everybody', 200],
+  'GET /api/entry/:token': ['everybody', 410],
+  'GET /api/entry/:token/picks': ['everybody', 410],
+  'GET /api/entry/:token/picks/:pick': ['everybody', 410],
+  'PUT /api/entry/:token/announcement': ['everybody', 422],
+  'POST /api/entry/:token/corrections': ['everybody', 422],
+  'POST /api/entry/:token/openings': ['everybody', 410],
+  'POST /api/entry-codes': ['everybody', 422],
+  'POST /api/entry-links': ['everybody', 422],
   'GET /api/office/organisations/:organisation/draws': ['listsDraws', 200],
   'POST /api/office/organisations/:organisation/draws': ['makesDraw', 422],
   'GET /api/office/draws/:draw': ['readsDraw', 200],
@@ -95,6 +104,10 @@ const TABLE: Record<string, readonly [keyof typeof WHO, number]> = {
   'POST /api/office/draws/:draw/entrants': ['editsDraw', 422],
   'PATCH /api/office/draws/:draw/entrants/:entrant': ['editsDraw', 422],
   'DELETE /api/office/draws/:draw/entrants/:entrant': ['editsDraw', 422],
+  'POST /api/office/draws/:draw/entrants/:entrant/link': ['editsDraw', 409],
+  'POST /api/office/draws/:draw/slips': ['editsDraw', 422],
+  'GET /api/office/draws/:draw/corrections': ['readsEntrants', 200],
+  'POST /api/office/draws/:draw/corrections/:correction': ['editsDraw', 422],
   'POST /api/office/draws/:draw/imports': ['editsDraw', 415],
   'GET /api/office/draws/:draw/imports': ['readsEntrants', 200],
   'GET /api/office/draws/:draw/imports/:import': ['readsEntrants', 200],
@@ -130,6 +143,8 @@ const TABLE: Record<string, readonly [keyof typeof WHO, number]> = {
   'GET /how-it-works': ['everybody', 200],
   'GET /developers': ['everybody', 200],
   'GET /log': ['everybody', 200],
+  'GET /entry': ['everybody', 200],
+  'GET /entry/:token': ['everybody', 200],
   'GET /sign-in': ['everybody', 200],
   'GET /password-resets': ['everybody', 200],
   'GET /password-resets/:token': ['everybody', 200],
@@ -156,6 +171,8 @@ const TABLE: Record<string, readonly [keyof typeof WHO, number]> = {
   'GET /organisations/:slug/qr.svg': ['everybody', 200],
   'GET /organisations/:slug/feed.atom': ['everybody', 200],
   'GET /check.html': ['everybody', 404],
+  'GET /entry/:token/receipt.json': ['everybody', 410],
+  'GET /entry/:token/short-proof.json': ['everybody', 410],
   'GET /healthz': ['everybody', 200],
   'GET /robots.txt': ['everybody', 200],
   'GET /sitemap.xml': ['everybody', 200],
@@ -182,7 +199,9 @@ let site: WebSite
 const visitors = new Map<RoleName, Visitor>()
 
 beforeAll(async () => {
-  site = await startWebSite()
+  // Everybody in the table tries links that fit nobody, from one address.
+  const byAddress = { tries: 1000, seconds: 60 }
+  site = await startWebSite({ entryLimits: { ...DEFAULT_ENTRY_LIMITS, byAddress, writes: byAddress } })
   const ours = await makePlace('approved')
   const suspended = await makePlace('suspended')
   const theirs = await site.organisation()
@@ -253,6 +272,7 @@ function addressOf(path: string, place: Place): string {
     seal: 'ab'.repeat(32),
     leaf: '0',
     entrant: '1',
+    correction: '1',
     witness: ELSEWHERE,
     person: ELSEWHERE,
     invitation: ELSEWHERE,

@@ -191,6 +191,7 @@ export function openDraw(over: Partial<DrawPage> = {}): DrawPage {
     ],
     seal: null,
     replacedSeals: [],
+    receiptsOpened: null,
     waiting: null,
     result: null,
     spread: null,

@@ -128,19 +128,35 @@ export function changeWords(changes: SealView['changes']): string {
   return `In the list that came next: ${parts.join(', ')}.`
 }
 
-export function AreYouInPart() {
+/** For entrants: how to see for themselves that they are in the list; and how many have done so. */
+export function AreYouInPart({ draw }: { readonly draw: DrawPage }) {
+  const over = draw.result !== null
   return (
-    <Part title="Are you in it?">
+    <Part title={over ? 'Were you in it?' : 'Are you in it?'}>
       <div className="measure">
         <p>
-          Every entrant with an e-mail address was sent a receipt when the list was sealed. It leads from their tickets
-          to this seal, so it proves that they are in the list, and nobody else’s entry is shown by it.
+          Every entrant with an e-mail address was sent a receipt when the list was sealed, and others can have a slip
+          with a code. The receipt leads from their tickets to this seal, so it proves that they are in the list, and
+          nobody else’s entry is shown by it. <Link to="/entry">Open your own entry</Link>.
         </p>
-        <p>
-          Keep it. If you entered and have none, ask the promoter before the draw: a mistake in a sealed list can be put
-          right by a new seal until then, and not after.
-        </p>
+        {over ? null : (
+          <p>
+            If you entered and have none, ask the promoter before the draw: a mistake in a sealed list can be put right
+            by a new seal until then, and not after.
+          </p>
+        )}
+        {draw.seal && draw.receiptsOpened !== null ? (
+          <p>{openedWords(draw.receiptsOpened, draw.seal.entrants, over)}</p>
+        ) : null}
       </div>
     </Part>
   )
+}
+
+/** The more receipts were opened, the harder it was to leave anybody out unnoticed. */
+function openedWords(opened: number, entrants: number, over: boolean): string {
+  const when = over ? 'before the draw' : 'so far'
+  const were =
+    opened === 0 ? 'No receipt was' : opened === 1 ? '1 receipt was' : `${formatNumber(opened)} receipts were`
+  return `${were} opened and checked ${when}, of ${formatNumber(entrants)}.`
 }
