@@ -20,10 +20,14 @@ const EVENTS: Record<string, readonly [title: string, meaning: string]> = {
   checkpointed: ['Log signed', 'The site signed the log as it stood.'],
 }
 
-export function eventTitle(event: string): string {
-  return EVENTS[event]?.[0] ?? event
+/** What the words depend on. The log has no event of its own for a list that opens again: that one alone says why. */
+export interface EventLine {
+  readonly event: string
+  readonly note: string | null
 }
 
-export function eventMeaning(event: string): string {
-  return EVENTS[event]?.[1] ?? ''
-}
+const wordsOf = ({ event, note }: EventLine) => EVENTS[event === 'opened' && note !== null ? 'reopened' : event]
+
+export const eventTitle = (line: EventLine): string => wordsOf(line)?.[0] ?? line.event
+
+export const eventMeaning = (line: EventLine): string => wordsOf(line)?.[1] ?? ''

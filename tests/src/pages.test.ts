@@ -4,7 +4,14 @@ import { escapeJson } from '#src/app/state.ts'
 import { render } from '#src/entry/server.tsx'
 import type { ApiClient } from '#shared/schemas/endpoint.ts'
 import { fixtureClient, oddsOf } from '#tests/support/public-pages/fixture-client.ts'
-import { allDraws, drawnDraw, hex, openDraw, sealedDraw } from '#tests/support/public-pages/fixtures.ts'
+import {
+  allDraws,
+  drawnDraw,
+  hex,
+  openDraw,
+  organisationPage,
+  sealedDraw,
+} from '#tests/support/public-pages/fixtures.ts'
 
 const ORIGIN = 'https://draws.example'
 
@@ -265,6 +272,22 @@ describe('a pick’s page', () => {
   })
 })
 
+describe('the page of a suspended organisation', () => {
+  it('says since when and why, in the words of the site', async () => {
+    const suspension = { at: '2026-05-04T09:00:00Z', reason: 'Prizes of two draws were not handed over.' }
+    const fixture = fixtureClient()
+    const api = {
+      call: (endpoint: { readonly name: string }, input: never) =>
+        endpoint.name === 'getOrganisation'
+          ? Promise.resolve({ ...organisationPage(), suspended: true, suspension })
+          : fixture.call(endpoint as never, input),
+    } as ApiClient
+    const { main } = await get('/organisations/larkmoor-bells', api)
+    expect(main).toContain('Since 4 May 2026. The site says why: “Prizes of two draws were not handed over.”')
+    expect((await get('/organisations/larkmoor-bells')).main).not.toContain('The site says why')
+  })
+})
+
 describe('addresses that lead nowhere', () => {
   it.each([
     '/nothing',
@@ -313,5 +336,28 @@ describe('the state for the browser', () => {
     const { document, text } = await get('/draws/quoting', fixtureClient([draw]))
     expect(text('h1')).toBe('state of Zm9yIHRoZSB0ZXN0cyBvbg')
     expect(() => JSON.parse(document.getElementById('evenpenny-state')?.textContent ?? '') as unknown).not.toThrow()
+  })
+})
+
+describe('how it works', () => {
+  it('says whether the place in the list mattered, and how little a few draws can show', async () => {
+    const { main } = await get('/how-it-works')
+    expect(main).toContain('12 draws with 140 picks: on average 48.6\u00a0% of the way down.')
+    expect(main).toContain('in about 56 of 100 cases (z = −0.59, p = 0.5552). That is nothing out of the ordinary.')
+    expect(main).toContain('With so few picks only a gross lean could show.')
+  })
+  it('calls a lean out, and says nothing of few picks where there are many', async () => {
+    const api = fixtureClient()
+    const order = { mean: 0.56, z: 3.95, p: 0.0000775 }
+    const leaning: ApiClient = {
+      call: (endpoint, input) =>
+        endpoint.name === 'getStatistics'
+          ? Promise.resolve({ at: '2026-06-17T17:00:00Z', draws: 300, picks: 5000, order } as never)
+          : api.call(endpoint, input),
+    }
+    const { main } = await get('/how-it-works', leaning)
+    expect(main).toContain('less than once in 1,000 cases')
+    expect(main).toContain('whoever runs this site has to look into it')
+    expect(main).not.toContain('With so few picks')
   })
 })

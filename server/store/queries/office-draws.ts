@@ -1,4 +1,4 @@
-import { asc, and, desc, eq, exists, sql } from 'drizzle-orm'
+import { asc, and, desc, eq, exists, ne, sql } from 'drizzle-orm'
 import type { listOfficeDraws as listEndpoint, OfficeDraw } from '#shared/schemas/api/office.ts'
 import type { ResponseOf } from '#shared/schemas/endpoint.ts'
 import type { Services } from '#server/services.ts'
@@ -48,7 +48,13 @@ export async function listOfficeDraws(
       quantities: sql<number[]>`coalesce((select array_agg(p.quantity) from prize p where p.draw_id = draw.id), '{}')`,
     })
     .from(draw)
-    .where(and(eq(draw.organisationId, owner.id), watched))
+    .where(
+      and(
+        eq(draw.organisationId, owner.id),
+        watched,
+        owner.state === 'suspended' ? ne(draw.state, 'draft') : undefined,
+      ),
+    )
     .orderBy(desc(draw.createdAt), asc(draw.slug))
     .limit(1000)
   const now = clock.now()
@@ -113,6 +119,8 @@ export async function getOfficeDraw(
     .where(eq(draw.id, input.draw))
   if (!found) return null
   const { draw: row, organisation: owner } = found
+  // The drafts of a suspended organisation hide until it is restored.
+  if (owner.state === 'suspended' && row.state === 'draft') return null
   const [prizes, withEmail, seals, waiting, witnesses, mail, jobs, [stored], [settled]] = await Promise.all([
     prizesOf(db, row.id),
     withEmailOf(db, row.id),
@@ -166,7 +174,7 @@ export async function getOfficeDraw(
     may: mayOf(row, input.rights, problems, inForce?.beaconRoundAt ?? null, waiting !== null, now),
     problems,
     mail,
-    jobs,
+    jobs: jobs.filter(({ kind, state }) => state !== 'waiting' || isStillMeant(kind, row.state)),
     archive: stored
       ? {
           key: stored.key,
@@ -177,6 +185,13 @@ export async function getOfficeDraw(
         }
       : null,
   }
+}
+
+/** Whether a job that waits for its time will have anything to do then: it stays in the queue when a draw takes another way. */
+function isStillMeant(kind: string, state: DrawRow['state']): boolean {
+  if (kind === 'close') return state === 'open'
+  if (kind === 'settle') return state === 'sealed'
+  return true
 }
 
 function mayOf(

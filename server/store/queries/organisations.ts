@@ -1,9 +1,11 @@
-import { and, asc, eq, ne, or, sql } from 'drizzle-orm'
+import { and, asc, desc, eq, ne, or, sql } from 'drizzle-orm'
 import type { ResponseOf } from '#shared/schemas/endpoint.ts'
 import type { listOrganisations as listEndpoint, OrganisationPage } from '#shared/schemas/api/public.ts'
 import type { Database } from '#server/store/database.ts'
 import { containing, offsetOf } from '#server/store/page.ts'
 import { organisation } from '#server/store/schema/people.ts'
+import { logEvent, logNote } from '#server/store/schema/record.ts'
+import { instantOf } from '#server/time/instants.ts'
 import { cardsOfOrganisation } from './draw-cards.ts'
 
 const PAGE_SIZE = 20
@@ -56,6 +58,19 @@ export async function getOrganisation(db: Database, slug: string): Promise<Organ
     address: row.address,
     demo: row.demo,
     suspended: row.state === 'suspended',
+    suspension: row.state === 'suspended' ? await suspensionOf(db, row.id) : null,
     draws: await cardsOfOrganisation(db, row.id),
   }
+}
+
+/** The suspension in force, as the log tells it. */
+async function suspensionOf(db: Database, organisationId: string): Promise<OrganisationPage['suspension']> {
+  const [latest] = await db
+    .select({ at: logEvent.at, reason: logNote.text })
+    .from(logEvent)
+    .leftJoin(logNote, eq(logNote.logIndex, logEvent.index))
+    .where(and(eq(logEvent.organisationId, organisationId), eq(logEvent.event, 'suspended')))
+    .orderBy(desc(logEvent.index))
+    .limit(1)
+  return latest ? { at: instantOf(latest.at), reason: latest.reason ?? '' } : null
 }

@@ -100,7 +100,11 @@ export const changeOrganisationState = {
   summary: 'Approve, suspend or restore, with a public reason for the last two',
   params: organisationParams,
   query: empty,
-  body: z.object({ version: z.int(), state: z.enum(['approved', 'suspended']), reason: text(500).nullable() }),
+  body: z.object({
+    version: z.int(),
+    state: z.enum(['approved', 'suspended']),
+    reason: text(500, 'Say why in a sentence: the public reads it.').nullable(),
+  }),
   response: organisationRow,
 } as const satisfies Endpoint
 export const inviteForAdministrator = {

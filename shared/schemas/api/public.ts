@@ -1,6 +1,7 @@
 import { z } from 'zod'
 import type { Endpoint } from '../endpoint.ts'
 export { getDrawOdds } from './odds.ts'
+export { getStatistics } from './statistics.ts'
 import { drawState, empty, hex32, instant, money, page, paged, rule, slug, totalTickets } from '../values.ts'
 
 /** One draw in a list. */
@@ -200,6 +201,8 @@ export const organisationPage = z.object({
   address: z.string(),
   demo: z.boolean(),
   suspended: z.boolean(),
+  /** Since when it is suspended, and the site's public reason; null where it is not. */
+  suspension: z.object({ at: instant, reason: z.string() }).nullable(),
   draws: z.array(drawCard),
 })
 export type OrganisationPage = z.infer<typeof organisationPage>

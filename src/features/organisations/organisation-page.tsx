@@ -6,6 +6,7 @@ import { useApp } from '#src/lib/app-context.ts'
 import { Head } from '#src/lib/head.tsx'
 import { load } from '#src/lib/loading.ts'
 import { countOf } from '#src/ui/format-number.ts'
+import { formatDate } from '#src/ui/format-time.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Notice } from '#src/ui/notice.tsx'
 import { Facts, Part, Title } from '#src/ui/page.tsx'
@@ -59,6 +60,12 @@ export function Organisation({ organisation }: { readonly organisation: Organisa
                   The site has suspended this organisation. It can open nothing new and change nothing. What it has
                   sealed is still drawn, and what is published stays.
                 </p>
+                {organisation.suspension?.reason ? (
+                  <p>
+                    Since {formatDate(organisation.suspension.at, 'UTC')}. The site says why: “
+                    {organisation.suspension.reason}”
+                  </p>
+                ) : null}
               </Notice>
             ) : null}
           </div>

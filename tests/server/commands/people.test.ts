@@ -16,6 +16,7 @@ import { resetPassword } from '#server/commands/people/reset-password.ts'
 import { revokeInvitation } from '#server/commands/people/revoke-invitation.ts'
 import { goOn } from '#server/jobs/crash-points.ts'
 import { sendMail } from '#server/jobs/mail/send-mail.ts'
+import { getOrganisation } from '#server/store/queries/organisations.ts'
 import { getOrganisationForAdministrator, listAllOrganisations } from '#server/store/queries/administrator.ts'
 import { getLog } from '#server/store/queries/log.ts'
 import { findAccount, findSignedIn, getInvitation, getPasswordReset, listPeople } from '#server/store/queries/people.ts'
@@ -226,7 +227,12 @@ describe('an organisation', () => {
     await change('approved', null)
     expect((await refusal(change('suspended', null))).fields).toMatchObject([{ field: 'reason' }])
     await change('suspended', 'Prizes of two draws were not handed over.')
+    expect((await getOrganisation(services.db, slug))?.suspension).toEqual({
+      at: expect.stringMatching(/Z$/),
+      reason: 'Prizes of two draws were not handed over.',
+    })
     await change('approved', 'All prizes were handed over.')
+    expect((await getOrganisation(services.db, slug))?.suspension).toBeNull()
     const stale = updateOrganisation(services, actor, { organisation: slug, version: 1, values })
     expect((await refusal(stale)).code).toBe('changed')
     await updateOrganisation(services, actor, {

@@ -133,7 +133,12 @@ describe('public reads', () => {
     expect((await listOrganisations(site.services.db, { q: '', page: 1 })).items).toMatchObject([
       { slug: office.organisation, draws: 4 },
     ])
+    const draft = await makeDraft(site.services, other)
+    const listed = async () => (await listOfficeDraws(site.services, { organisation: other.organisation }))?.draws
+    expect(await listed()).toHaveLength(1)
     await set('suspended')
+    expect(await listed()).toEqual([])
+    expect(await getOfficeDraw(site.services, { draw: draft, rights: ALL })).toBeNull()
     expect(await getOrganisation(site.services.db, other.organisation)).toMatchObject({ suspended: true })
   })
 })
@@ -154,6 +159,16 @@ describe('office reads', () => {
     clock.advance(3600_000)
     expect(await may(ids.sealed)).toEqual(['state'])
     clock.set(start)
+  })
+  it('leave out the jobs that wait for a time that does not matter any more', async () => {
+    const waiting = async (id: string) =>
+      (await getOfficeDraw(site.services, { draw: id, rights: ALL }))?.jobs
+        .filter(({ state }) => state === 'waiting')
+        .map(({ kind }) => kind)
+    expect(await waiting(ids.open)).toContain('close')
+    expect(await waiting(ids.closed)).not.toContain('close')
+    expect(await waiting(ids.sealed)).toContain('settle')
+    expect(await waiting(ids.drawn)).not.toContain('settle')
   })
   it('narrow the list to the draws that a witness watches', async () => {
     const all = await listOfficeDraws(site.services, { organisation: office.organisation })

@@ -526,6 +526,7 @@ export function organisationPage(): OrganisationPage {
     address: 'The Tower, Larkmoor',
     demo: false,
     suspended: false,
+    suspension: null,
     draws: allDraws().slice(0, 5).map(cardOf),
   }
 }

@@ -30,8 +30,8 @@ export function HistoryPart({ draw }: { readonly draw: DrawPage }) {
           <li key={line.index}>
             <time dateTime={line.at}>{formatBrief(line.at, draw.timeZone, year)}</time>
             <div>
-              <h3>{eventTitle(line.event)}</h3>
-              <p>{eventMeaning(line.event)}</p>
+              <h3>{eventTitle(line)}</h3>
+              <p>{eventMeaning(line)}</p>
               {line.note ? <p className="mt-0">“{line.note}”</p> : null}
               <div className="exact">
                 <Link to={`/log?at=${line.index}#entry-${line.index}`}>

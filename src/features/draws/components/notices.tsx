@@ -1,5 +1,6 @@
 import type { DrawPage } from '#shared/schemas/api/public.ts'
 import { formatMoment } from '#src/ui/format-time.ts'
+import { Link } from '#src/ui/link.tsx'
 import { Notice } from '#src/ui/notice.tsx'
 import { lastEvent } from '../words.ts'
 
@@ -23,7 +24,9 @@ export function DrawNotices({ draw }: { readonly draw: DrawPage }) {
       <Notice level={2} key="suspended" title={`${draw.organisation.name} is suspended`}>
         <p>
           The site has suspended this organisation. Its people can change nothing here. What it has sealed is still
-          drawn, and what is published stays. With questions, write to the promoter.
+          drawn, and what is published stays. Why is said on{' '}
+          <Link to={`/organisations/${draw.organisation.slug}`}>the organisation’s page</Link>; with questions, write to
+          the promoter.
         </p>
       </Notice>
     ) : null,

@@ -17,7 +17,7 @@ export function Entry({ line, asked }: EntryProps) {
     <li id={`entry-${line.index}`} aria-current={asked ? 'true' : undefined}>
       <time dateTime={line.at}>{formatBrief(line.at, 'UTC', 0)}</time>
       <div>
-        <h3>{eventTitle(line.event)}</h3>
+        <h3>{eventTitle(line)}</h3>
         <p>
           {line.draw ? <Link to={`/draws/${line.draw.slug}`}>{line.draw.title}</Link> : null}
           {line.draw && line.organisation ? ', ' : ''}
@@ -25,7 +25,7 @@ export function Entry({ line, asked }: EntryProps) {
             <Link to={`/organisations/${line.organisation.slug}`}>{line.organisation.name}</Link>
           ) : null}
           {line.draw || line.organisation ? '. ' : ''}
-          {eventMeaning(line.event)}
+          {eventMeaning(line)}
         </p>
         {line.note ? <p className="mt-0">“{line.note}”</p> : null}
         <div className="exact">
