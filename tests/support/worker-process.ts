@@ -49,3 +49,16 @@ export async function until(what: string, holds: () => Promise<boolean>): Promis
     await new Promise((resolve) => setTimeout(resolve, 200))
   }
 }
+
+/**
+ * Holds a worker back so that it is another one's turn, for some seconds at most: it may have been stopped in the middle of
+ * a transaction, whose locks would then hold up everybody. The answer lets it go on at once.
+ */
+export function holdBack(worker: Worker, milliseconds = 8_000): () => void {
+  worker.process.kill('SIGSTOP')
+  const timer = setTimeout(() => worker.process.kill('SIGCONT'), milliseconds)
+  return () => {
+    clearTimeout(timer)
+    worker.process.kill('SIGCONT')
+  }
+}

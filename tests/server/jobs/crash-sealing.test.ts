@@ -11,7 +11,7 @@ import { logEvent } from '#server/store/schema/record.ts'
 import { localFromInstant } from '#server/time/local-time.ts'
 import { makeClosed, makeOffice, makeSealed, type Office, versionOf } from '#tests/support/draws.ts'
 import { startTestSite, type TestSite } from '#tests/support/site.ts'
-import { startWorker, stopWorker, until, type Worker } from '#tests/support/worker-process.ts'
+import { holdBack, startWorker, stopWorker, until, type Worker } from '#tests/support/worker-process.ts'
 
 /** Entrants with an address in each draw: Ada and Cleo. */
 const ADDRESSES = 2
@@ -111,10 +111,12 @@ describe('two workers race for a timestamp, and one is killed (kill -9)', () => 
       })
       const first: string[] = []
       const replaced: string[] = []
+      let letGo = () => {}
       try {
-        for (let turn = 0; !dead && turn < 4; turn += 1) {
+        for (let turn = 0; !dead && turn < 8; turn += 1) {
           // From the second draw on the other worker is held back, so that it is this one's turn.
-          if (turn > 0) survivor.process.kill('SIGSTOP')
+          letGo()
+          if (turn > 0) letGo = holdBack(survivor)
           const replacing = turn % 2 === 1
           const make = replacing ? waitingReplacement : waitingDraw
           const id = await make(`Draw ${turn + 1} with a crash at ${point}`)
@@ -127,7 +129,7 @@ describe('two workers race for a timestamp, and one is killed (kill -9)', () => 
         expect(await doomed.ended).toBe('SIGKILL')
       } finally {
         doomed.process.kill('SIGKILL')
-        survivor.process.kill('SIGCONT')
+        letGo()
       }
       for (const id of [...first, ...replaced]) await until(`${point}: every draw is sealed`, () => finished(id))
       for (const id of first) await expectOnce(id, 'sealed', 1)
