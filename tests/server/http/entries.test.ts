@@ -271,13 +271,13 @@ describe('how an entrant is announced', () => {
     expect(await entrantNamed(site, id, 'Ada Quill')).toMatchObject({
       person: { label: 'A. Q.', givenLabel: 'Ada Q.' },
     })
-    const renamed = { ...values, name: 'Ada Quince', label: 'Ada Quince, Sallow' }
+    const renamed = { ...values, name: 'Ada Quince', label: 'Ada Quince, Otterford' }
     await updateEntrant(site.services, office.promoter, { draw: id, entrant, version: version + 1, values: renamed })
     const [slip] = (await printSlips(site.services, office.promoter, { draw: id, who: { entrant }, after: null })).slips
     const mine = slip?.code ?? ''
-    expect((await see(mine)).announcement.words).toMatchObject({ label: 'Ada Quince, Sallow', initials: 'A. Q.' })
+    expect((await see(mine)).announcement.words).toMatchObject({ label: 'Ada Quince, Otterford', initials: 'A. Q.' })
     await choose(mine, 'label').expect(200)
-    expect(await see(mine)).toMatchObject({ label: 'Ada Quince, Sallow', announcement: { choice: 'label' } })
+    expect(await see(mine)).toMatchObject({ label: 'Ada Quince, Otterford', announcement: { choice: 'label' } })
     await choose(mine, 'initials').expect(200)
     await seal(id)
     await choose(mine, 'label').expect(409)

@@ -53,13 +53,13 @@ describe('signing in', () => {
   it('keeps the address and leads to what is wrong', async () => {
     const detail = 'The address or the password is not right.'
     await openPage('/sign-in', fakeApi({ ...anonymous, signIn: () => Promise.reject(refusal(401, detail)) }))
-    type('E-mail address', 'hester@sallowbrook.example')
+    type('E-mail address', 'hester@otterford.example')
     type('Password', 'not the one')
     await press('Sign in')
     const alert = await screen.findByRole('alert')
     expect(alert.textContent).toContain(detail)
     expect(document.activeElement).toBe(alert)
-    expect(screen.getByLabelText<HTMLInputElement>('E-mail address').value).toBe('hester@sallowbrook.example')
+    expect(screen.getByLabelText<HTMLInputElement>('E-mail address').value).toBe('hester@otterford.example')
     expect(document.title).toMatch(/^Error: /)
   })
 
@@ -89,13 +89,13 @@ describe('signing in', () => {
     router.subscribe((state) => {
       if (state.navigation.location) visited.push(state.navigation.location.pathname)
     })
-    type('E-mail address', ' hester@sallowbrook.example ')
+    type('E-mail address', ' hester@otterford.example ')
     type('Password', 'three unrelated words')
     await press('Sign in')
     await waitFor(() => expect(visited).toContain(to))
     expect(visited[0]).toBe(to)
     expect(api.of('signIn')).toEqual([
-      { body: { email: 'hester@sallowbrook.example', password: 'three unrelated words' } },
+      { body: { email: 'hester@otterford.example', password: 'three unrelated words' } },
     ])
   })
 })
@@ -104,16 +104,16 @@ describe('passwords', () => {
   it('answers the same whether or not the address has an account', async () => {
     const api = fakeApi({ getSession: () => session(null), requestPasswordReset: () => ({}) })
     await openPage('/password-resets', api)
-    type('E-mail address', 'nobody@sallowbrook.example')
+    type('E-mail address', 'nobody@otterford.example')
     await press('Send me the link')
-    await screen.findByText(/If nobody@sallowbrook.example belongs to an account, a link is on its way/)
+    await screen.findByText(/If nobody@otterford.example belongs to an account, a link is on its way/)
   })
 
   it('refuses a short new password without sending it', async () => {
     const token = 'a'.repeat(43)
     const api = fakeApi({
       getSession: () => session(null),
-      getPasswordReset: () => ({ email: 'hester@sallowbrook.example' }),
+      getPasswordReset: () => ({ email: 'hester@otterford.example' }),
     })
     await openPage(`/password-resets/${token}`, api)
     type('New password', 'elevenchars')
@@ -128,7 +128,7 @@ describe('passwords', () => {
     const invitation = {
       organisation: HALL.name,
       role: 'witness' as const,
-      email: 'ivy@sallowbrook.example',
+      email: 'ivy@otterford.example',
       invitedBy: 'Hester Vane',
       knownPerson: true,
     }

@@ -157,7 +157,7 @@ describe('the page of the entrants', () => {
 })
 
 describe('the panel of an entrant', () => {
-  const theirs = entrant(1, { tickets: 9, email: 'new@sallowbrook.example', version: 2 })
+  const theirs = entrant(1, { tickets: 9, email: 'new@otterford.example', version: 2 })
 
   /** A list in which somebody else has changed the first entrant by the time that one saves. */
   function contested() {
@@ -189,8 +189,8 @@ describe('the panel of an entrant', () => {
     const sent = api.of('updateEntrant').map(({ body }) => body as EntrantRow)
     // Their new address was not typed over here, so it stays.
     expect(sent.map(({ version, tickets, email }) => [version, tickets, email])).toEqual([
-      [1, 6, 'entrant1@sallowbrook.example'],
-      [2, 6, 'new@sallowbrook.example'],
+      [1, 6, 'entrant1@otterford.example'],
+      [2, 6, 'new@otterford.example'],
     ])
     expect(document.activeElement).toBe(screen.getByRole('button', { name: 'Change Lowenna Trask' }))
   })
@@ -200,7 +200,7 @@ describe('the panel of an entrant', () => {
     await collide(api)
     await act(async () => click('Show what is there now'))
     expect(field('Tickets').value).toBe('9')
-    expect(field('E-mail address, if any').value).toBe('new@sallowbrook.example')
+    expect(field('E-mail address, if any').value).toBe('new@otterford.example')
     await act(async () => click('Save'))
     await waitFor(() => expect(api.of('updateEntrant').at(-1)).toMatchObject({ body: { version: 2, tickets: 9 } }))
   })

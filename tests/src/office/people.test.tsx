@@ -85,18 +85,18 @@ describe('the people of an organisation', () => {
   it('invites to the role that was chosen, and empties the form', async () => {
     const api = fakeApi({
       ...base,
-      invitePerson: () => ({ ...people().invitations[0], email: 'joss@sallowbrook.example' }),
+      invitePerson: () => ({ ...people().invitations[0], email: 'joss@otterford.example' }),
     })
     await openPage(path, api)
     await act(async () => fireEvent.click(button('Send the invitation')))
     await screen.findAllByText(/Type an e-mail address/)
     expect(api.of('invitePerson')).toEqual([])
-    fireEvent.change(screen.getByLabelText('E-mail address'), { target: { value: ' joss@sallowbrook.example ' } })
+    fireEvent.change(screen.getByLabelText('E-mail address'), { target: { value: ' joss@otterford.example ' } })
     fireEvent.click(screen.getByRole('radio', { name: /^Witness/ }))
     await act(async () => fireEvent.click(button('Send the invitation')))
-    await screen.findByText('An invitation is on its way to joss@sallowbrook.example.')
+    await screen.findByText('An invitation is on its way to joss@otterford.example.')
     expect(api.of('invitePerson')).toEqual([
-      { params: { organisation: HALL.slug }, body: { email: 'joss@sallowbrook.example', role: 'witness' } },
+      { params: { organisation: HALL.slug }, body: { email: 'joss@otterford.example', role: 'witness' } },
     ])
     expect(screen.getByLabelText<HTMLInputElement>('E-mail address').value).toBe('')
   })
@@ -104,8 +104,8 @@ describe('the people of an organisation', () => {
   it('takes an invitation back', async () => {
     const api = fakeApi({ ...base, revokeInvitation: () => ({}) })
     await openPage(path, api)
-    await act(async () => fireEvent.click(button('Take back the invitation to ivy@sallowbrook.example')))
-    await screen.findByText('The invitation to ivy@sallowbrook.example is taken back.')
+    await act(async () => fireEvent.click(button('Take back the invitation to ivy@otterford.example')))
+    await screen.findByText('The invitation to ivy@otterford.example is taken back.')
     expect(api.of('revokeInvitation')).toEqual([
       { params: { organisation: HALL.slug, invitation: people().invitations[0]?.id } },
     ])

@@ -58,7 +58,7 @@ export function organisationRow(changes: Partial<OrganisationRow> = {}): Organis
     id: 'd3d6b7a2-52a4-4b0e-9b5a-7f6d5f0c3c24',
     ...HALL,
     registration: 'Charity 998041, England and Wales',
-    address: 'Weir Lane, Sallow Brook',
+    address: 'Weir Lane, Otterford',
     about: 'Keeps the hall open for everybody in the valley.',
     timeZone: 'Europe/London',
     currency: 'GBP',

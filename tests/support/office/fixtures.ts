@@ -8,7 +8,7 @@ export const DRAW_ID = '3f0e7f6e-4f0a-4a1c-9d55-0c1f5a0b7a11'
 export const ME = '6f6f3f58-9f0d-4c58-8a57-3a2f1b7d9e01'
 export const OTHER = '6f6f3f58-9f0d-4c58-8a57-3a2f1b7d9e02'
 export const IMPORT_ID = 'b6d6b7a2-52a4-4b0e-9b5a-7f6d5f0c3c21'
-export const HALL = { slug: 'sallow-brook-hall', name: 'Sallow Brook Village Hall' } as const
+export const HALL = { slug: 'otterford-hall', name: 'Otterford Village Hall' } as const
 export const OFFICE = `/office/${HALL.slug}`
 export const DRAW = `${OFFICE}/draws/${DRAW_ID}`
 export const DIGEST = '5c'.repeat(32)
@@ -21,7 +21,7 @@ export function session(role: Role | 'administrator' | null = 'promoter', state 
         : {
             id: ME,
             name: 'Hester Vane',
-            email: 'hester@sallowbrook.example',
+            email: 'hester@otterford.example',
             administrator: role === 'administrator',
             memberships:
               role === 'administrator' ? [] : [{ organisation: { ...HALL, state, timeZone: 'Europe/London' }, role }],
@@ -48,7 +48,7 @@ export function officeDraw(changes: Partial<OfficeDraw> = {}): OfficeDraw {
     title: 'Harvest Supper Draw',
     goodCause: 'A ramp and a wider door for the hall',
     promoterName: 'Hester Vane',
-    promoterAddress: '2 Weir Lane, Sallow Brook',
+    promoterAddress: '2 Weir Lane, Otterford',
     licence: 'Small society register 0417',
     ticketPrice: { minor: 150, currency: 'GBP' },
     minimumAge: 16,
@@ -113,7 +113,7 @@ export function entrant(id: number, changes: Partial<EntrantRow> = {}): EntrantR
     name: ['Lowenna Trask', 'Amadou Keita', 'Birgit Solberg'][(id - 1) % 3] as string,
     label: ['Lowenna T.', 'Amadou K.', 'Birgit, Weir Lane'][(id - 1) % 3] as string,
     tickets: [4, 10, 5][(id - 1) % 3] as number,
-    email: id % 3 === 2 ? null : `entrant${id}@sallowbrook.example`,
+    email: id % 3 === 2 ? null : `entrant${id}@otterford.example`,
     phone: id % 3 === 2 ? '01632 960177' : null,
     numbers: null,
     source: 'import',
@@ -156,7 +156,7 @@ export function importView(changes: Partial<ImportView> = {}): ImportView {
         name: 'Piran Nance',
         tickets: 6,
         label: 'Piran N.',
-        email: 'piran@sallowbrook.example',
+        email: 'piran@otterford.example',
         phone: null,
         numbers: '0201-0206',
       },
@@ -176,14 +176,14 @@ export function people(change = true): ResponseOf<typeof listPeople> {
       {
         id: ME,
         name: 'Hester Vane',
-        email: 'hester@sallowbrook.example',
+        email: 'hester@otterford.example',
         role: 'promoter',
         since: '2026-02-01T09:00:00Z',
       },
       {
         id: OTHER,
         name: 'Tomos Ruddle',
-        email: 'tomos@sallowbrook.example',
+        email: 'tomos@otterford.example',
         role: 'organiser',
         since: '2026-03-01T09:00:00Z',
       },
@@ -191,7 +191,7 @@ export function people(change = true): ResponseOf<typeof listPeople> {
     invitations: [
       {
         id: 'a1d6b7a2-52a4-4b0e-9b5a-7f6d5f0c3c22',
-        email: 'ivy@sallowbrook.example',
+        email: 'ivy@otterford.example',
         role: 'witness',
         invitedBy: 'Hester Vane',
         sentAt: '2026-09-18T09:00:00Z',
