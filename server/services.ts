@@ -16,6 +16,7 @@ import {
   createTimestamper,
   type Timestamper,
 } from '#server/adapters/timestamp/timestamper.ts'
+import type { WitnessAddress } from '#shared/log/add-checkpoint.ts'
 import type { Config } from '#server/config/config.ts'
 import { openStore, type RootDatabase } from '#server/store/database.ts'
 
@@ -26,6 +27,8 @@ export interface Site {
   readonly network: Network
   readonly networkName: 'quicknet' | 'development'
   readonly bucket: string
+  /** Outside witnesses of the site's log. */
+  readonly witnesses: readonly WitnessAddress[]
   /** Seals on the development chain are made and accepted here. */
   readonly developmentChain: boolean
 }
@@ -94,6 +97,7 @@ export function createServices(config: Config, options: ServiceOptions): OpenSer
       network: config.beacon.network,
       networkName: config.beacon.networkName,
       bucket: config.objectStore.bucket,
+      witnesses: config.witnesses,
       developmentChain: config.beacon.networkName === 'development',
     },
     async close() {

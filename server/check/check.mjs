@@ -1763,7 +1763,8 @@ function checkReplaced(c) {
     if (left < 0 || changed > left || left + added !== lists[k + 1])
       fail(`${where} seals[${k}]`, 'its counts do not lead from this list to the next.')
   })
-  return `${listed.length} seals were replaced before this one.${foreign ? ` ${foreign} of them are signed by an earlier key, which is not in the archive.` : ''}`
+  const replaced = listed.length === 1 ? '1 seal was' : `${listed.length} seals were`
+  return `${replaced} replaced before this one.${foreign ? ` ${foreign} of them are signed by an earlier key, which is not in the archive.` : ''}`
 }
 
 // ---- Running --------------------------------------------------------------------------------------------------------

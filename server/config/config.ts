@@ -1,5 +1,6 @@
 import { resolve } from 'node:path'
 import { DEVELOPMENT_CHAIN, type Network, QUICKNET } from '#shared/protocol/networks.ts'
+import type { WitnessAddress } from '#shared/log/add-checkpoint.ts'
 import type { Certificate } from '#shared/timestamp/certificate.ts'
 import { DEVELOPMENT_AUTHORITY_PEM, isDevelopmentAuthority } from '#shared/timestamp/development-authority.ts'
 import { ConfigError } from './config-error.ts'
@@ -55,6 +56,8 @@ export interface Config {
     /** The development authority is trusted, whose key is public. */
     readonly development: boolean
   }
+  /** Outside witnesses of the site's log. */
+  readonly witnesses: readonly WitnessAddress[]
   /** Where local mails are read, null with a real mail server. */
   readonly mailPageUrl: string | null
   /** How long a job may run before another worker takes it over. */
@@ -192,6 +195,7 @@ function assemble(v: Whole): Config {
       trusted: v.EVENPENNY_TIMESTAMP_CERTIFICATES,
       development: v.EVENPENNY_TIMESTAMP_CERTIFICATES.some(isDevelopmentAuthority),
     },
+    witnesses: v.EVENPENNY_WITNESSES ?? [],
     jobExpirySeconds: v.EVENPENNY_JOB_EXPIRY_SECONDS,
     crashAt: v.EVENPENNY_CRASH_AT ?? null,
     mailPageUrl: v.EVENPENNY_LOCAL ? `http://127.0.0.1:${v.EVENPENNY_FAKE_MAIL_PAGE_PORT}` : null,

@@ -1,4 +1,7 @@
 import { z } from 'zod'
+import { sha256 } from '@noble/hashes/sha2.js'
+import type { WitnessAddress } from '#shared/log/add-checkpoint.ts'
+import { parseVkey } from '#shared/log/signed-note.ts'
 import { type Certificate, certificatesOfPem } from '#shared/timestamp/certificate.ts'
 import { databaseUrlProblem } from './database-url.ts'
 import { parseEncryptionKeys, parsePemKeys, parsePemTexts } from './keys.ts'
@@ -69,6 +72,22 @@ const certificates = parsed((text): readonly Certificate[] | string => {
   }
 })
 
+/** Outside witnesses of the log: their key and where they take checkpoints, with commas between them. */
+const witnesses = parsed((text): readonly WitnessAddress[] | string => {
+  const found: WitnessAddress[] = []
+  for (const entry of text.split(',').map((part) => part.trim())) {
+    const [vkey = '', url = '', ...more] = entry.split(/\s+/)
+    const key = parseVkey(sha256, vkey)
+    if (!key.ok || key.value.type !== 4)
+      return 'must be a list like NAME+ID+KEY https://witness.example: each key of type 4.'
+    if (more.length > 0 || !URL.canParse(url) || !/^https?:$/.test(new URL(url).protocol)) {
+      return `must give the address of the witness ${key.value.name} behind its key.`
+    }
+    found.push({ key: key.value, url })
+  }
+  return found
+})
+
 const mailFrom = z
   .string()
   .refine(
@@ -118,6 +137,7 @@ export const variables = z.object({
   EVENPENNY_BEACON_RELAYS: addresses('drand relays'),
   EVENPENNY_TIMESTAMP_URLS: addresses('timestamp authorities'),
   EVENPENNY_TIMESTAMP_CERTIFICATES: certificates,
+  EVENPENNY_WITNESSES: witnesses,
   EVENPENNY_FAKE_MAIL_PAGE_PORT: port,
   EVENPENNY_JOB_EXPIRY_SECONDS: wholeNumber(1, 3600),
   EVENPENNY_CRASH_AT: z.string(),
@@ -129,6 +149,7 @@ export type VariableName = keyof typeof variables.shape
 export const optionalVariables: ReadonlySet<VariableName> = new Set([
   'EVENPENNY_S3_ENDPOINT',
   'EVENPENNY_RETIRED_SIGNING_KEYS',
+  'EVENPENNY_WITNESSES',
   'EVENPENNY_CRASH_AT',
 ])
 

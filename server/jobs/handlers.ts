@@ -7,6 +7,7 @@ import { sealLongList } from '#server/commands/draws/seal-draw.ts'
 import type { Services } from '#server/services.ts'
 import type { JobData, QueueName } from '#server/store/queues.ts'
 import { dateOf } from '#server/time/instants.ts'
+import { cosignCheckpoints } from './cosign-checkpoints.ts'
 import type { AfterWrite } from './crash-points.ts'
 import { prepareMail } from './mail/prepare-mail.ts'
 import { sendMail } from './mail/send-mail.ts'
@@ -71,6 +72,10 @@ export function jobHandlers(services: Services, afterWrite: AfterWrite): Handler
     },
     async checkpoint() {
       await storeCheckpoints(services)
+      return DONE
+    },
+    async cosign() {
+      await cosignCheckpoints(services)
       return DONE
     },
     async archive(data) {

@@ -1,26 +1,22 @@
 import { mkdtemp, open, rm } from 'node:fs/promises'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
-import { and, eq } from 'drizzle-orm'
+import { eq } from 'drizzle-orm'
 import { CHECKING_TEXT } from '#shared/archive/checking-text.ts'
 import { type LockedContents, lockedMembers, sumMember } from '#shared/archive/proof-archive.ts'
 import { writeZip } from '#shared/archive/zip-writer.ts'
 import { utf8 } from '#shared/bytes/bytes.ts'
-import { logProofBytes } from '#shared/log/log-proof.ts'
 import { readCheckFiles } from '#server/adapters/archive/check-files.ts'
 import { createSha256 } from '#server/adapters/archive/check-tools.ts'
 import { deflateWithZlib } from '#server/adapters/archive/zlib-codec.ts'
 import { sourceOfFile } from '#server/adapters/object-store/put-source.ts'
-import { putCheckpoint } from '#server/commands/put-checkpoint.ts'
 import type { Services } from '#server/services.ts'
-import { signedHead } from '#server/store/queries/log-head.ts'
-import { provenEntriesOf, storedCheckpoint } from '#server/store/queries/log-tree.ts'
 import { entriesOf, transcriptOf } from '#server/store/queries/proof-members.ts'
-import { logEvent } from '#server/store/schema/record.ts'
 import { archive, result } from '#server/store/schema/result.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { seal } from '#server/store/schema/seal.ts'
 import type { AfterWrite } from './crash-points.ts'
+import { laterMembers } from './later-members.ts'
 
 /**
  * Puts the locked half of a draw's proof (all but labels.jsonl and SHA256SUMS) into the object store, under a lock where
@@ -97,25 +93,6 @@ async function contentsOf(
     'transcript.jsonl': () => transcriptOf(services.db, drawId),
     'site-key.pem': utf8(key.publicKeyPem),
     ...(await readCheckFiles()),
-    ...(await logMembers(services, drawId, settled.result.digest)),
+    ...(await laterMembers(services, drawId, settled)),
   }
-}
-
-/**
- * The head of the log and what it says of the draw. The head is the oldest one kept with the result's entry, so that a
- * second run makes the same members; it is signed with all keys, so with that of the seal, which may be retired by now.
- */
-async function logMembers(services: Services, drawId: string, resultDigest: string) {
-  const { db, sha256 } = services
-  const [drawn] = await db
-    .select({ index: logEvent.index })
-    .from(logEvent)
-    .where(and(eq(logEvent.drawId, drawId), eq(logEvent.event, 'drawn'), eq(logEvent.digest, resultDigest)))
-  if (!drawn) throw new Error('The log does not have the result of this draw.')
-  if ((await storedCheckpoint(db, drawn.index)) === null) await putCheckpoint(services)
-  const kept = await storedCheckpoint(db, drawn.index)
-  if (!kept) throw new Error('There is no checkpoint with the result of this draw.')
-  const { note } = await signedHead(db, services, { size: kept.size })
-  const entries = await provenEntriesOf(db, sha256, drawId, kept.size)
-  return { 'checkpoint.txt': utf8(note), 'log-proof.json': logProofBytes(entries) }
 }

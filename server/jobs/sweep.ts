@@ -2,9 +2,10 @@ import { and, eq, isNull, lt, lte, sql } from 'drizzle-orm'
 import { checkpointIsDue } from '#server/commands/put-checkpoint.ts'
 import { inTransaction } from '#server/commands/transaction.ts'
 import type { Services } from '#server/services.ts'
+import { cosigningIsDue } from './cosign-checkpoints.ts'
 import { hasLiveJob } from '#server/store/queries/jobs.ts'
-import type { QueueName } from '#server/store/queues.ts'
 import { drawsWithWaitingSeal } from '#server/store/queries/sealings.ts'
+import type { QueueName } from '#server/store/queues.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { entrantImport } from '#server/store/schema/entrant.ts'
 import { mail } from '#server/store/schema/operation.ts'
@@ -47,6 +48,7 @@ export async function sweep(services: Services): Promise<void> {
     .where(and(isNull(archive.drawId), lte(result.drawnAt, due)))
   for (const { id } of unstored) await ensure(services, 'archive', id)
   await ensureCheckpoint(services)
+  if (await cosigningIsDue(services)) await ensureOne(services, 'cosign')
   await ensureSending(services, due)
   // An upload that nobody has touched for ten minutes has lost its process.
   await db
@@ -93,7 +95,7 @@ async function ensureSending(services: Services, due: Date): Promise<void> {
 }
 
 /** Enqueues a job of a kind that is for the whole site, unless one waits or runs. */
-async function ensureOne(services: Services, queue: 'send-mail' | 'checkpoint'): Promise<void> {
+async function ensureOne(services: Services, queue: 'send-mail' | 'checkpoint' | 'cosign'): Promise<void> {
   await inTransaction(services, async (tx) => {
     await tx.db.execute(sql`select pg_advisory_xact_lock(hashtext(${`sweep ${queue}`}))`)
     const { rows } = await tx.db.execute(sql`

@@ -13,6 +13,8 @@ export const QUEUES = {
   settle: { retryLimit: 100_000, retryDelay: 3, retryBackoff: false },
   /** Signs the site's log and puts its checkpoints into the object store. */
   checkpoint: { retryLimit: 2000, retryDelay: 3, retryBackoff: false },
+  /** Sends the newest checkpoint of the log to outside witnesses. Those that do not answer are asked again by the sweep. */
+  cosign: { retryLimit: 3, retryDelay: 3, retryBackoff: false },
   /** Puts one draw's proof into the object store. */
   archive: { retryLimit: 2000, retryDelay: 3, retryBackoff: false },
   /** Writes the rows of a draw's mails: private links, its seal, its result, a notice. */
@@ -36,6 +38,7 @@ export interface JobData {
     readonly postpone?: { readonly drawAt: string; readonly reason: string }
   }
   readonly timestamp: { readonly draw: string }
+  readonly cosign: Record<string, never>
   readonly settle: { readonly draw: string }
   readonly archive: { readonly draw: string }
   readonly checkpoint: { readonly draw?: string }

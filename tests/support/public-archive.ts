@@ -8,7 +8,7 @@ import { LockedArchives } from '#server/http/files/locked-archives.ts'
 import { proofZip } from '#server/http/files/proof-zip.ts'
 import { labelsOf } from '#server/store/queries/proof-members.ts'
 import { archive } from '#server/store/schema/result.ts'
-import type { GivenReceipt } from '#shared/protocol/check/state.ts'
+import type { CheckOptions, GivenReceipt } from '#shared/protocol/check/state.ts'
 import type { CheckReport } from '#shared/protocol/check/check-archive.ts'
 import type { TestSite } from './site.ts'
 
@@ -22,11 +22,15 @@ export async function receiptsOf(site: TestSite, to = ''): Promise<GivenReceipt[
   return receipts
 }
 
-/** Puts the public archive of a draw together as the site does, and checks it with the product's own check. */
+/**
+ * Puts the public archive of a draw together as the site does, and checks it with the product's own check. `keep`: where to
+ * leave the zip besides.
+ */
 export async function checkPublicArchive(
   site: TestSite,
   drawId: string,
   receipts: readonly GivenReceipt[] = [],
+  options: CheckOptions & { readonly keep?: string } = {},
 ): Promise<CheckReport> {
   const [row] = await site.services.db.select().from(archive).where(eq(archive.drawId, drawId))
   if (!row) throw new Error('The draw has no archive.')
@@ -42,11 +46,13 @@ export async function checkPublicArchive(
       const bytes = Buffer.concat(pieces)
       if (bytes.length !== size) throw new Error('The archive has not the size that was announced.')
       await writeFile(path, bytes)
+      if (options.keep) await writeFile(options.keep, bytes)
     })
     return await checkPath(path, () => undefined, {
       allowDevelopmentChain: true,
       expectedKey: site.services.signing.current.fingerprint,
       receipts,
+      ...options,
     })
   } finally {
     await locked.close()

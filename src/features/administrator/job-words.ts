@@ -2,6 +2,7 @@ const WORDS: Record<string, string> = {
   close: 'Close a list whose time has come',
   settle: 'Settle a draw',
   archive: 'Keep a proof archive',
+  cosign: 'Have the log cosigned by outside witnesses',
   checkpoint: 'Sign the log and keep its checkpoint',
   seal: 'Seal a long list',
   timestamp: 'Get the timestamp of a seal',

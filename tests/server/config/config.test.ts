@@ -8,6 +8,9 @@ import { ConfigError } from '#server/config/config-error.ts'
 import { readConfig } from '#server/config/config.ts'
 import { databaseUrl } from '#server/config/database-url.ts'
 import { DEVELOPMENT_CHAIN, QUICKNET } from '#shared/protocol/networks.ts'
+import { sha256 } from '#server/adapters/hash/sha256.ts'
+import { formatVkey, noteKey } from '#shared/log/signed-note.ts'
+import { publicKeyOf } from '#shared/protocol/signature.ts'
 import { DEVELOPMENT_AUTHORITY_PEM } from '#shared/timestamp/development-authority.ts'
 
 const data = mkdtempSync(join(tmpdir(), 'evenpenny-config-'))
@@ -17,6 +20,9 @@ const pem = () => generateKeyPairSync('ed25519').privateKey.export({ type: 'pkcs
 const [signingKey, oldKey, olderKey] = [pem(), pem(), pem()]
 const secret = 'a-session-secret-of-more-than-32-characters'
 const key = (fill: number) => Buffer.alloc(32, fill).toString('base64')
+
+const witnessKey = noteKey(sha256, 'lantern.example', 4, publicKeyOf(new Uint8Array(32).fill(5)))
+const logsKey = noteKey(sha256, 'lantern.example', 1, publicKeyOf(new Uint8Array(32).fill(5)))
 
 /** A certificate of somebody else, made by OpenSSL. */
 const authorityPem = execFileSync(
@@ -120,6 +126,9 @@ describe('readConfig for production', () => {
     ['EVENPENNY_MAIL_FROM', 'two lines', 'a@b.example\nBcc: c@d.example'],
     ['EVENPENNY_BEACON_NETWORK', 'mainnet'],
     ['EVENPENNY_BEACON_RELAYS', 'ftp://relay.example'],
+    ['EVENPENNY_WITNESSES', 'lantern.example'],
+    ['EVENPENNY_WITNESSES', 'a key without an address', formatVkey(witnessKey)],
+    ['EVENPENNY_WITNESSES', 'a key that signs logs', `${formatVkey(logsKey)} https://lantern.example`],
     ['EVENPENNY_TIMESTAMP_URLS', 'timestamps.example'],
     ['EVENPENNY_TIMESTAMP_CERTIFICATES', 'no-such-file.pem'],
     ['EVENPENNY_TIMESTAMP_CERTIFICATES', 'a key', signingKey],
@@ -145,6 +154,15 @@ describe('readConfig for production', () => {
     expect(
       problems({ ...production, EVENPENNY_LOCAL: 'yes', EVENPENNY_DEMO: 'no', EVENPENNY_BEACON_NETWORK: 'quicknet' }),
     ).toEqual([expect.stringMatching(/^EVENPENNY_LOCAL must be no/)])
+  })
+
+  it('takes outside witnesses by their keys and addresses, and does without', () => {
+    const text = `${formatVkey(witnessKey)} https://lantern.example/w, ${formatVkey(witnessKey)}  http://10.0.0.2:4790`
+    expect(readConfig({ ...production, EVENPENNY_WITNESSES: text }).witnesses).toEqual([
+      { key: witnessKey, url: 'https://lantern.example/w' },
+      { key: witnessKey, url: 'http://10.0.0.2:4790' },
+    ])
+    expect(readConfig(production).witnesses).toEqual([])
   })
 
   it('takes keys as PEM, as PEM with written line feeds, and from files', () => {
