@@ -111,7 +111,7 @@ export function createSite(parts: SiteParts): SiteApp {
   app.use(compression({ threshold: 1024 }))
   mountStaticFiles(app, parts.build)
   mountCheckPage(app, parts.build)
-  mountSiteFiles(app, { db: services.db, origin: config.origin, version: parts.version })
+  mountSiteFiles(app, { services, origin: config.origin, version: parts.version })
   mountLogFiles(app, services)
   mountDrawFiles(app, { db: services.db, keys: services.signing, archives })
   mountEntryFiles(app, services, entryGuard)

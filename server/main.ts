@@ -4,6 +4,7 @@ import { fileURLToPath } from 'node:url'
 import { pino } from 'pino'
 import { createPasswords } from '#server/adapters/passwords/passwords.ts'
 import { createSite } from '#server/app.ts'
+import { noteSiteKeys } from '#server/commands/note-site-keys.ts'
 import { loadConfig } from '#server/config/config.ts'
 import { ConfigError } from '#server/config/config-error.ts'
 import { loadRenderer } from '#server/http/pages/renderer.ts'
@@ -19,6 +20,7 @@ async function main(): Promise<void> {
   const config = loadConfig()
   const logger = pino({ level: config.logLevel, base: { service: 'site' } })
   const services = createServices(config, { name: 'evenpenny site' })
+  await noteSiteKeys(services)
   const passwords = createPasswords()
   const { version } = JSON.parse(readFileSync(`${ROOT}package.json`, 'utf8')) as { version: string }
   const development = config.dev

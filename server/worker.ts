@@ -1,4 +1,5 @@
 import pino from 'pino'
+import { noteSiteKeys } from '#server/commands/note-site-keys.ts'
 import { loadConfig } from '#server/config/config.ts'
 import { ConfigError } from '#server/config/config-error.ts'
 import { crashAt } from '#server/jobs/crash-points.ts'
@@ -10,6 +11,7 @@ async function main(): Promise<void> {
   const config = loadConfig()
   const log = pino({ level: config.logLevel, name: 'worker' })
   const services = createServices(config, { name: 'evenpenny worker', jobExpirySeconds: config.jobExpirySeconds })
+  await noteSiteKeys(services)
   const worker = await runWorker(services, {
     databaseUrl: config.databaseUrl,
     afterWrite: crashAt(config.crashAt),

@@ -64,6 +64,7 @@ export const fileRules: Readonly<Record<string, Rule>> = Object.fromEntries(
     '/check.html',
     '/entry/:token/receipt.json',
     '/entry/:token/short-proof.json',
+    '/site-keys.json',
     '/healthz',
     '/robots.txt',
     '/api/v1/openapi.json',

@@ -23,6 +23,7 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   listOrganisations: visit,
   getOrganisation: visit,
   getLog: visit,
+  getSiteKeys: visit,
   getLogCheckpointV1: visit,
   listLogEntriesV1: visit,
   getLogInclusionV1: visit,

@@ -1,18 +1,30 @@
 import type { Express } from 'express'
 import { sql } from 'drizzle-orm'
+import type { Services } from '#server/services.ts'
 import type { Database } from '#server/store/database.ts'
+import { getSiteKeys } from '#server/store/queries/site-keys.ts'
 import { publicSlugs } from '#server/store/queries/public-files.ts'
 
 export interface SiteFileParts {
-  readonly db: Database
+  readonly services: Pick<Services, 'db' | 'sha256' | 'site'>
   readonly origin: string
   readonly version: string
 }
 
 const DATABASE_ANSWERS_WITHIN_MS = 3000
 
-/** `/healthz` for whatever watches the site, `/robots.txt` and `/sitemap.xml` for search engines. */
-export function mountSiteFiles(app: Express, { db, origin, version }: SiteFileParts): void {
+/**
+ * `/healthz` for whatever watches the site, `/robots.txt` and `/sitemap.xml` for search engines, `/site-keys.json` for whoever
+ * compares keys.
+ */
+export function mountSiteFiles(app: Express, { services, origin, version }: SiteFileParts): void {
+  const { db } = services
+  app.get('/site-keys.json', async (_request, response) => {
+    response.setHeader('Cache-Control', 'public, max-age=300')
+    response.setHeader('Access-Control-Allow-Origin', '*')
+    response.setHeader('Cross-Origin-Resource-Policy', 'cross-origin')
+    response.json(await getSiteKeys(services))
+  })
   app.get('/healthz', async (_request, response) => {
     response.setHeader('Cache-Control', 'no-store')
     const answers = await answersInTime(db)

@@ -5,12 +5,15 @@ import * as drawPages from '#server/store/queries/draw-page.ts'
 import * as log from '#server/store/queries/log.ts'
 import { getDrawOdds } from '#server/store/queries/odds.ts'
 import * as organisations from '#server/store/queries/organisations.ts'
+import { getSiteKeys } from '#server/store/queries/site-keys.ts'
+import { getSiteKeys as getSiteKeysEndpoint } from '#shared/schemas/api/site-keys.ts'
 import * as api from '#shared/schemas/api/public.ts'
 
 /** What everybody may read. */
 export function publicHandlers({ services }: HandlerParts): Handled[] {
   const { db } = services
   return [
+    handle(getSiteKeysEndpoint, () => getSiteKeys(services)),
     handle(api.getHome, () => cards.getHome(db)),
     handle(api.searchDraws, (_context, { query }) => cards.searchDraws(db, query)),
     handle(api.getDraw, async (_context, { params }) => found(await drawPages.getDraw(services, params.slug))),

@@ -5,6 +5,7 @@ import * as log from './log.ts'
 import * as office from './office.ts'
 import * as publicPages from './public.ts'
 import * as session from './session.ts'
+import * as siteKeys from './site-keys.ts'
 import * as publicApi from './v1.ts'
 
 const isEndpoint = (value: unknown): value is Endpoint =>
@@ -16,6 +17,7 @@ export const allEndpoints: readonly Endpoint[] = [
   publicPages,
   entry,
   log,
+  siteKeys,
   publicApi,
   office,
   administrator,

@@ -1,3 +1,4 @@
+import type { LoaderFunctionArgs } from 'react-router'
 import { ChanceProduct } from '#src/features/ladder/chance.tsx'
 import { Ladder, Winner } from '#src/features/ladder/ladder.tsx'
 import { ReadingKey } from '#src/features/ladder/reading-key.tsx'
@@ -8,9 +9,18 @@ import { Link } from '#src/ui/link.tsx'
 import { Notice } from '#src/ui/notice.tsx'
 import { Part, Title } from '#src/ui/page.tsx'
 import { ENTRANTS, everyWay, exampleWalk } from '#src/features/ladder/example.ts'
+import { load } from '#src/lib/loading.ts'
+import { siteKeysQuery } from './api/get-site-keys.ts'
+import { KeysPart } from './keys-part.tsx'
 
 const LEAD =
   'First the list is sealed, then a random number comes into the world, then coins decide. The order is the point: nobody who could change the list could know the number, and nobody who knew the number could change the list.'
+
+/** The page stands without its keys. */
+export async function loader(args: LoaderFunctionArgs) {
+  await load(args, siteKeysQuery).catch(() => null)
+  return null
+}
 
 export function Component() {
   return (
@@ -23,6 +33,7 @@ export function Component() {
       <TossedByHand />
       <Odds />
       <WhatIsShown />
+      <KeysPart />
       <Cautions />
     </>
   )

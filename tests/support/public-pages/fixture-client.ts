@@ -5,6 +5,7 @@ import { listOfCounts, listOfGroups } from '#shared/odds/ticket-groups.ts'
 import type { OddsView } from '#shared/schemas/api/odds.ts'
 import type { ApiClient, CallInput, Endpoint, ResponseOf } from '#shared/schemas/endpoint.ts'
 import { Problem } from '#shared/schemas/problem.ts'
+import { siteKeysFixture } from './site-keys-fixture.ts'
 import { allDraws, cardOf, logPage, organisationPage, pickPageOf, steepPick } from './fixtures.ts'
 import { drawLogOf, logStateFixture } from './log-fixtures.ts'
 import type { DrawPage } from '#shared/schemas/api/public.ts'
@@ -88,6 +89,7 @@ export function fixtureClient(draws: readonly DrawPage[] = allDraws()): ApiClien
       return organisationPage()
     },
     getLog: (_, query) => logPage(Number(query.page ?? 1)),
+    getSiteKeys: () => siteKeysFixture(),
     getLogState: () => logStateFixture(),
     getDrawLog: (params) => drawLogOf(find(params)),
   }
