@@ -10,13 +10,14 @@ export async function heartbeat(services: Services, id: string, startedAt: Date)
     .onConflictDoUpdate({ target: workerHeartbeat.id, set: { seenAt } })
 }
 
-/** Looks at relays, mail server and object store, and notes what it finds for the administrator. */
+/** Looks at relays, timestamp authorities, mail server and object store, and notes what it finds for the administrator. */
 export async function lookAround(services: Services): Promise<void> {
   const { site } = services
-  const [relays, mail, store] = await Promise.all([
+  const [relays, mail, store, authorities] = await Promise.all([
     services.beacon.check(site.network),
     services.mailer.check(),
     services.store.check(),
+    services.timestamps.check(),
   ])
   const at = services.clock.now()
   const rows: (typeof serviceCheck.$inferInsert)[] = [
@@ -25,6 +26,14 @@ export async function lookAround(services: Services): Promise<void> {
       address: relay,
       ok,
       round,
+      milliseconds,
+      detail,
+      at,
+    })),
+    ...authorities.map(({ url, ok, milliseconds, detail }) => ({
+      service: 'timestamp' as const,
+      address: url,
+      ok,
       milliseconds,
       detail,
       at,

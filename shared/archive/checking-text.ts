@@ -21,6 +21,11 @@ Without it the check can only say "signed by an unknown key". If you have a rece
 
     node check.mjs . my-receipt.json
 
+Whether the seal is older than the draw is shown only by somebody whom you trust: give the certificate of the timestamp
+authority, or the key of a witness of the site's log, and get both from them and not from the site:
+
+    node check.mjs --tsa authority.pem --witness NAME+ID+KEY
+
 The program prints twelve steps and stops at the first that fails. It is one file that people can read. It opens no
 connection and writes no file.
 
@@ -35,11 +40,13 @@ Any Linux or macOS machine, with sha256sum and OpenSSL 3:
     openssl pkey -pubin -in site-key.pem -outform DER | sha256sum
     sha256sum seal.json
     sha256sum terms.txt transcript.jsonl
+    openssl ts -verify -data seal.json -in seal.tsr -CAfile authority.pem
 
 The first line says whether a file was damaged. The next two say whether seal and result were signed with this key. The
 fourth gives the key's fingerprint: compare all 64 digits with the ones that the site publishes, and with "key" in
 seal.json. The fifth gives the digest of the seal, which receipts and the result name as "seal". The last two digests
-stand in seal.json as "terms" and in result.json as "transcript".
+stand in seal.json as "terms" and in result.json as "transcript". The last line verifies the timestamp of the seal, with the
+authority's certificate from a place that you trust; "openssl ts -reply -in seal.tsr -text" prints its time.
 
 That the picks follow from the seal and its sources is more arithmetic than a terminal is good for: for that, use a check.
 
@@ -57,11 +64,16 @@ That the picks follow from the seal and its sources is more arithmetic than a te
     site-key.pem      the site's public key
     checkpoint.txt    the head of the site's log when this archive was made, signed: its size and its root
     log-proof.json    what the log says of this draw, each entry with its path to that root
+    seal.tsr          a timestamp over seal.json by an outside authority (RFC 3161)
+    witnessed.txt, witnessed-proof.json
+                      the log from before the draw as outside witnesses cosigned it, and the path of this seal in it
+    replaced.json, replaced-1.json, replaced-1.sig, replaced-1.tsr, and so on
+                      the seals that this one replaced, and how many entrants were added, removed and changed after each
     SHA256SUMS        digests of all the other files, against damage
     check.mjs         the check
     bls12-381.mjs     a published library that it needs for the beacon's signature
 
-Archives from before the site kept its log as a tree lack checkpoint.txt and log-proof.json.
+Older archives lack some of the files about the log and the time, and a draw whose seal was never replaced has none of the last.
 
 
 4. What no check can show

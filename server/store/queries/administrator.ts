@@ -11,6 +11,8 @@ import { containing, offsetOf, type Page } from '#server/store/page.ts'
 import { draw } from '#server/store/schema/draw.ts'
 import { mail, serviceCheck, workerHeartbeat } from '#server/store/schema/operation.ts'
 import { organisation } from '#server/store/schema/people.ts'
+import { witnessStates } from './cosignatures.ts'
+import { drawsWithWaitingSeal } from './sealings.ts'
 import { archive } from '#server/store/schema/result.ts'
 import { seal } from '#server/store/schema/seal.ts'
 import { instantOf, instantOrNull } from '#server/time/instants.ts'
@@ -100,28 +102,31 @@ export async function getSiteState(
 ): Promise<ResponseOf<typeof stateEndpoint>> {
   const { db, clock, site } = services
   const now = clock.now()
-  const [jobs, [worker], checks, mails, failures, archives, overdue, clockError] = await Promise.all([
-    jobStates(db),
-    db
-      .select({ seenAt: sql<Date | null>`max(${workerHeartbeat.seenAt})`.mapWith(workerHeartbeat.seenAt) })
-      .from(workerHeartbeat),
-    db.select().from(serviceCheck).orderBy(asc(serviceCheck.service), asc(serviceCheck.address)),
-    db.select({ state: mail.state, count: sql<number>`count(*)::int` }).from(mail).groupBy(mail.state),
-    db
-      .select({ at: mail.nextAttemptAt, kind: mail.kind, error: mail.error })
-      .from(mail)
-      .where(sql`${mail.error} is not null and ${mail.state} in ('queued', 'failed')`)
-      .orderBy(desc(mail.nextAttemptAt))
-      .limit(20),
-    db
-      .select({
-        archives: sql<number>`count(*)::int`,
-        unverified: sql<number>`count(*) filter (where ${archive.verifiedAt} is null)::int`,
-      })
-      .from(archive),
-    overdueDraws(db, new Date(now.getTime() - OVERDUE_AFTER)),
-    clockErrorOf(db),
-  ])
+  const [jobs, [worker], checks, mails, failures, archives, overdue, clockError, waitingSeals, witnesses] =
+    await Promise.all([
+      jobStates(db),
+      db
+        .select({ seenAt: sql<Date | null>`max(${workerHeartbeat.seenAt})`.mapWith(workerHeartbeat.seenAt) })
+        .from(workerHeartbeat),
+      db.select().from(serviceCheck).orderBy(asc(serviceCheck.service), asc(serviceCheck.address)),
+      db.select({ state: mail.state, count: sql<number>`count(*)::int` }).from(mail).groupBy(mail.state),
+      db
+        .select({ at: mail.nextAttemptAt, kind: mail.kind, error: mail.error })
+        .from(mail)
+        .where(sql`${mail.error} is not null and ${mail.state} in ('queued', 'failed')`)
+        .orderBy(desc(mail.nextAttemptAt))
+        .limit(20),
+      db
+        .select({
+          archives: sql<number>`count(*)::int`,
+          unverified: sql<number>`count(*) filter (where ${archive.verifiedAt} is null)::int`,
+        })
+        .from(archive),
+      overdueDraws(db, new Date(now.getTime() - OVERDUE_AFTER)),
+      clockErrorOf(db),
+      drawsWithWaitingSeal(db, now).then((draws) => draws.length),
+      witnessStates(db, site.witnesses),
+    ])
   const count = (state: string) => mails.find((row) => row.state === state)?.count ?? 0
   const check = (service: 'mail' | 'store') => checks.find((row) => row.service === service)
   const unseen = 'No worker has looked at it yet.'
@@ -142,6 +147,13 @@ export async function getSiteState(
         .filter((row) => row.service === 'relay')
         .map(({ address, ok, round, milliseconds, detail }) => ({ address, ok, round, milliseconds, detail })),
     },
+    timestamps: {
+      authorities: checks
+        .filter((row) => row.service === 'timestamp')
+        .map(({ address, ok, milliseconds, detail }) => ({ address, ok, milliseconds, detail })),
+      waiting: waitingSeals,
+    },
+    witnesses,
     store: {
       bucket: site.bucket,
       reachable: check('store')?.ok ?? false,

@@ -1,4 +1,6 @@
 import { and, asc, eq, gt, lt } from 'drizzle-orm'
+import type { WitnessAddress } from '#shared/log/add-checkpoint.ts'
+import { formatVkey } from '#shared/log/signed-note.ts'
 import type { Database } from '#server/store/database.ts'
 import { logCosignature, logWitness } from '#server/store/schema/record.ts'
 
@@ -32,4 +34,19 @@ export async function witnessedSize(db: Database, index: number, before: Date): 
 export async function witnessState(db: Database, witness: string): Promise<typeof logWitness.$inferSelect | null> {
   const [row] = await db.select().from(logWitness).where(eq(logWitness.witness, witness))
   return row ?? null
+}
+
+/** What became of the log at each configured witness, for the administrator. */
+export async function witnessStates(db: Database, witnesses: readonly WitnessAddress[]) {
+  const rows = await db.select().from(logWitness)
+  return witnesses.map(({ key, url }) => {
+    const row = rows.find(({ witness }) => witness === formatVkey(key))
+    return {
+      name: key.name,
+      address: url,
+      ok: row?.ok ?? false,
+      size: row?.size ?? 0,
+      detail: row?.detail ?? 'No checkpoint was sent to it yet.',
+    }
+  })
 }

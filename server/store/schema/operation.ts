@@ -68,7 +68,7 @@ export const workerHeartbeat = pgTable('worker_heartbeat', {
 export const serviceCheck = pgTable(
   'service_check',
   {
-    service: text({ enum: ['relay', 'mail', 'store'] }).notNull(),
+    service: text({ enum: ['relay', 'mail', 'store', 'timestamp'] }).notNull(),
     address: text().notNull(),
     ok: boolean().notNull(),
     round: bigint({ mode: 'number' }),

@@ -171,6 +171,17 @@ export const getSiteState = {
         }),
       ),
     }),
+    /** Authorities that put timestamps on seals, and seals that wait for one. */
+    timestamps: z.object({
+      authorities: z.array(
+        z.object({ address: z.string(), ok: z.boolean(), milliseconds: z.int().nullable(), detail: z.string() }),
+      ),
+      waiting: z.int(),
+    }),
+    /** Outside witnesses of the log; `size`: entries of the last checkpoint that each cosigned. */
+    witnesses: z.array(
+      z.object({ name: z.string(), address: z.string(), ok: z.boolean(), size: z.int(), detail: z.string() }),
+    ),
     store: z.object({
       bucket: z.string(),
       reachable: z.boolean(),

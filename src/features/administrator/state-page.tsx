@@ -54,6 +54,7 @@ export function Component() {
           <Jobs state={data} />
           <Mail state={data} />
           <Beacon state={data} />
+          <Outside state={data} />
           <Store state={data} />
           <Key state={data} />
         </>
@@ -83,6 +84,8 @@ export function leadOf(state: SiteState): string {
     state.mail.reachable ? null : 'the mail server cannot be reached',
     state.mail.failed > 0 ? `${countOf(state.mail.failed, 'mail')} failed` : null,
     state.beacon.relays.some((relay) => relay.ok) ? null : 'no beacon relay answers',
+    state.timestamps.authorities.some((authority) => authority.ok) ? null : 'no timestamp authority answers',
+    state.timestamps.waiting > 0 ? `${countOf(state.timestamps.waiting, 'seal')} waiting for a timestamp` : null,
     state.store.reachable ? null : 'the object store cannot be reached',
     Math.abs(state.clockErrorSeconds) >= 2
       ? `this machine's clock and the database's are ${state.clockErrorSeconds} seconds apart`
@@ -242,6 +245,43 @@ function Beacon({ state: { beacon } }: { readonly state: SiteState }) {
           },
         ]}
       />
+    </Part>
+  )
+}
+
+/** Who, besides this site, says when a seal was there. */
+function Outside({ state: { timestamps, witnesses } }: { readonly state: SiteState }) {
+  return (
+    <Part title="Timestamps and witnesses">
+      <DataTable
+        dense
+        rows={timestamps.authorities}
+        rowKey={(authority) => authority.address}
+        columns={[
+          { key: 'address', head: 'Timestamp authority', rowHead: true, cell: (authority) => authority.address },
+          { key: 'state', head: 'State', cell: (authority) => authority.detail },
+          {
+            key: 'time',
+            head: 'Took',
+            numeric: true,
+            cell: (authority) => (authority.milliseconds === null ? '' : `${formatNumber(authority.milliseconds)} ms`),
+          },
+        ]}
+      />
+      {witnesses.length === 0 ? (
+        <p className="note mt-unit">No outside witness follows the log.</p>
+      ) : (
+        <DataTable
+          dense
+          rows={witnesses}
+          rowKey={(witness) => witness.name}
+          columns={[
+            { key: 'name', head: 'Witness of the log', rowHead: true, cell: (witness) => witness.name },
+            { key: 'state', head: 'State', cell: (witness) => witness.detail },
+            { key: 'size', head: 'Entries', numeric: true, cell: (witness) => formatNumber(witness.size) },
+          ]}
+        />
+      )}
     </Part>
   )
 }

@@ -259,6 +259,11 @@ describe('the state of the site', () => {
       mail: { reachable: true },
       store: { reachable: true, locked: true, bucket: 'evenpenny' },
       beacon: { network: 'development', relays: [{ ok: false, round: null }] },
+      timestamps: {
+        authorities: [{ ok: true, detail: 'It gave a timestamp, signed by Development timestamps - worthless.' }],
+        waiting: 0,
+      },
+      witnesses: [],
       overdue: [{ title: 'Sealed draw' }],
     })
     expect(state.jobs.failed).toMatchObject([

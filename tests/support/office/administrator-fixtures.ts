@@ -39,6 +39,21 @@ export function siteState(): ResponseOf<typeof getSiteState> {
         { address: 'https://relay-two.example', ok: true, round: 24_881_003, milliseconds: 131, detail: 'answers' },
       ],
     },
+    timestamps: {
+      authorities: [
+        { address: 'https://timestamps.example', ok: true, milliseconds: 210, detail: 'It gave a timestamp.' },
+      ],
+      waiting: 0,
+    },
+    witnesses: [
+      {
+        name: 'lantern.example',
+        address: 'https://lantern.example',
+        ok: true,
+        size: 4210,
+        detail: 'It cosigned the log at 4210 entries.',
+      },
+    ],
     store: {
       bucket: 'evenpenny-proofs',
       reachable: true,
