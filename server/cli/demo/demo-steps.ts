@@ -139,7 +139,7 @@ export class DemoSteps {
     return (await this.row(id)).version
   }
 
-  private async mail(id: string, about: 'seal' | 'result'): Promise<void> {
+  private async mail(id: string, about: 'entry' | 'seal' | 'result'): Promise<void> {
     await prepareMail(this.services, goOn, { draw: id, about })
     await sendMail(this.services, goOn)
   }
@@ -159,5 +159,6 @@ export class DemoSteps {
       stream: Readable.from([bytes]),
     })
     await applyImport(this.services, this.office.organiser, { draw: id, import: imported })
+    await this.mail(id, 'entry')
   }
 }

@@ -1,6 +1,6 @@
 import { and, asc, eq, gt, isNull } from 'drizzle-orm'
 import { slipCodeFromEntropy } from '#shared/entrants/slip-code.ts'
-import { type SlipView, SLIPS_AT_ONCE } from '#shared/schemas/api/entry.ts'
+import { SLIPS_AT_ONCE } from '#shared/schemas/api/entry.ts'
 import type { CommandActor } from '#server/commands/actor.ts'
 import { audit } from '#server/commands/audit.ts'
 import { lockDraw, requireState } from '#server/commands/draws/lock-draw.ts'
@@ -19,12 +19,20 @@ export interface PrintSlipsInput {
   readonly after: number | null
 }
 
+export interface Slip {
+  readonly entrant: string
+  readonly name: string
+  readonly tickets: number
+  readonly numbers: string | null
+  readonly code: string
+}
+
 /** Makes a new code for each entrant of a batch. Codes of slips printed earlier go on working. */
 export async function printSlips(
   services: Services,
   actor: CommandActor,
   input: PrintSlipsInput,
-): Promise<{ readonly slips: SlipView[]; readonly more: boolean }> {
+): Promise<{ readonly slips: readonly Slip[]; readonly more: boolean }> {
   return inTransaction(services, async (tx) => {
     const { row: its } = await lockDraw(tx, { draw: input.draw })
     requireState(its, PUBLISHED, 'print slips')

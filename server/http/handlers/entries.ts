@@ -11,6 +11,7 @@ import { type CallContext, personOf, resourceOf } from '#server/http/endpoints/c
 import { type Handled, handle } from '#server/http/endpoints/registry.ts'
 import { createEntryGate } from '#server/http/handlers/entry-gate.ts'
 import { found, type HandlerParts } from '#server/http/handlers/parts.ts'
+import { qrShape } from '#server/http/pieces/qr.ts'
 import { problem } from '#server/http/problems.ts'
 import { listCorrections } from '#server/store/queries/corrections.ts'
 import { findEntryAccess } from '#server/store/queries/entry-access.ts'
@@ -75,13 +76,15 @@ export function entryHandlers({ services, entryGuard }: HandlerParts): Handled[]
       await sendEntryLink(services, personOf(context), { draw: params.draw, entrant: Number(params.entrant) })
       return {}
     }),
-    handle(api.printSlips, (context, { params, body: { who, after } }) =>
-      printSlips(services, personOf(context), {
+    handle(api.printSlips, async (context, { params, body: { who, after } }) => {
+      const { slips, more } = await printSlips(services, personOf(context), {
         draw: params.draw,
         who: typeof who === 'string' ? who : { entrant: Number(who.entrant) },
         after: after === null ? null : Number(after),
-      }),
-    ),
+      })
+      const { origin } = services.site
+      return { slips: slips.map((slip) => ({ ...slip, qr: qrShape(`${origin}/entry/${slip.code}`) })), more }
+    }),
     handle(api.listCorrections, (context, { params, query }) => {
       const rights = permissionsOn(['edit', 'run'], context.actor, resourceOf(context))
       return listCorrections(db, { draw: params.draw, page: query.page, rights })

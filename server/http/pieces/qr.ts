@@ -8,6 +8,12 @@ const QUIET = 4
  * it: readers need it so.
  */
 export function qrSvg(text: string, title: string): string {
+  const { side, path } = qrShape(text)
+  return `<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${side} ${side}" width="${side * 8}" height="${side * 8}" role="img" aria-label="${title}" shape-rendering="crispEdges"><title>${title}</title><path fill="#fff" d="M0 0h${side}v${side}H0z"/><path fill="#000" d="${path}"/></svg>\n`
+}
+
+/** A QR code's dark modules as one path, in a square of `side` units with its quiet zone. */
+export function qrShape(text: string): { readonly side: number; readonly path: string } {
   const { modules } = create(text, { errorCorrectionLevel: 'M' })
   const side = modules.size + 2 * QUIET
   let path = ''
@@ -20,5 +26,5 @@ export function qrSvg(text: string, title: string): string {
       x += width
     }
   }
-  return `<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${side} ${side}" width="${side * 8}" height="${side * 8}" role="img" aria-label="${title}" shape-rendering="crispEdges"><title>${title}</title><path fill="#fff" d="M0 0h${side}v${side}H0z"/><path fill="#000" d="${path}"/></svg>\n`
+  return { side, path }
 }

@@ -29,6 +29,7 @@ export function presentEntrant({ entrant: row, person }: Joined): EntrantRow {
     numbers: person?.numbers ?? null,
     source: SOURCES[row.source] ?? row.source,
     addedAt: instantOf(row.addedAt),
+    announced: person?.announced ?? 'label',
     version: row.version,
   }
 }

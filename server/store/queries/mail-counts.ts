@@ -18,6 +18,7 @@ export async function mailCountsOf(db: Database, drawId: string): Promise<Office
     failed: count(kinds, 'failed'),
   })
   return {
+    entry: counts('entry', 'entry-link', 'correction'),
     seal: counts('seal'),
     result: counts('result', 'won'),
     notice: counts('postponed', 'cancelled', 'failed'),

@@ -233,6 +233,8 @@ export const slipView = z.object({
   numbers: z.string().nullable(),
   /** 16 letters; shown this once, kept only as a keyed hash. */
   code: z.string(),
+  /** The address with the code, as the dark modules of a QR code in a square of `side` units. */
+  qr: z.object({ side: z.int(), path: z.string() }),
 })
 export type SlipView = z.infer<typeof slipView>
 

@@ -1,4 +1,5 @@
 import { z } from 'zod'
+import { ANNOUNCEMENTS } from '../../entrants/announcement.ts'
 import type { Endpoint } from '../endpoint.ts'
 export { getOfficeOdds } from './odds.ts'
 import {
@@ -160,7 +161,7 @@ export const officeDraw = z.object({
   }),
   /** What stands in the way of opening and of sealing: sentences that say what to do. */
   problems: z.object({ open: z.array(z.string()), seal: z.array(z.string()) }),
-  mail: z.object({ seal: mailCounts, result: mailCounts, notice: mailCounts }),
+  mail: z.object({ entry: mailCounts, seal: mailCounts, result: mailCounts, notice: mailCounts }),
   jobs: z.array(
     z.object({
       id: z.string(),
@@ -348,6 +349,8 @@ export const entrantRow = z.object({
   numbers: z.string().nullable(),
   source: z.string(),
   addedAt: instant,
+  /** The entrant's own choice on their private page; the label that counts follows it. */
+  announced: z.enum(ANNOUNCEMENTS),
   version,
 })
 export type EntrantRow = z.infer<typeof entrantRow>

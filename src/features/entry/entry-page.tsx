@@ -103,7 +103,10 @@ function EntryTitle({ entry, lead }: { readonly entry: EntryView; readonly lead:
   const suspended = draw.organisation.suspended
   return (
     <>
-      <p className="private">Only people with this link can see this page. It is never shown in a search.</p>
+      <div className="row private">
+        <div className="stub" />
+        <p className="body">Only people with this link can see this page. It is never shown in a search.</p>
+      </div>
       <Title
         above={`Your entry, as “${entry.label}”`}
         title={entryTitle(entry)}

@@ -25,7 +25,7 @@ export function entryTitle(entry: EntryView): string {
   }
   if (state === 'cancelled') return 'This draw was cancelled'
   if (state === 'failed') return 'This draw has failed'
-  if (entry.sealed) return `Your ${tickets} ${entry.tickets === 1 ? 'is' : 'are'} in the sealed list`
+  if (entry.sealed) return `${entry.tickets === 1 ? 'Your ticket is' : `Your ${tickets} are`} in the sealed list`
   return `You are entered with ${tickets}`
 }
 
@@ -42,7 +42,8 @@ export function entryLead(entry: EntryView, first: EntryPick | null): string {
   const at = formatMoment(draw.drawAt, draw.timeZone)
   const among = `${formatNumber(draw.tickets)} tickets of ${countOf(draw.entrants, 'entrant')}`
   const chance = `Your chance of the first prize is ${oneIn(entry.tickets, draw.tickets)} (${fraction(entry.tickets, draw.tickets)}).`
-  if (entry.sealed) return `They are among ${among}, and nobody can change that unseen. The draw is on ${at}. ${chance}`
+  const whose = entry.tickets === 1 ? 'It is' : 'They are'
+  if (entry.sealed) return `${whose} among ${among}, and nobody can change that unseen. The draw is on ${at}. ${chance}`
   if (draw.state === 'closed') return `The list is closed and will be sealed in public. The draw is on ${at}.`
   return `The list is open until ${formatMoment(draw.closesAt, draw.timeZone)}. The draw is on ${at}.`
 }
@@ -65,7 +66,7 @@ export function pickWords(pick: EntryPick): string {
   const award = awardInSentence(pick.award)
   if (pick.mine === 0) return `${capitalise(award)}: your tickets had left the draw, with what they had won before.`
   const chance = `${formatNumber(pick.mine)} of the ${countOf(pick.remaining, 'ticket')} then in ${pick.mine === 1 ? 'was' : 'were'} yours: ${oneIn(pick.mine, pick.remaining)} (${fraction(pick.mine, pick.remaining)}).`
-  return `${chance} ${capitalise(nearness(pick))}.`
+  return chance
 }
 
 /** "coin 5 of 5"; "yours" where the walk came to them; "no longer in". */

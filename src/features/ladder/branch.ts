@@ -48,7 +48,7 @@ export function branchWords(branch: readonly BranchPlace[], coins: readonly Ladd
   if (!first || !last) return 'You were the only entrant left, so no coin was needed.'
   const mine = formatNumber(first.mine)
   const turned = last.kept ? null : turnWords(branch.length, coins[branch.length - 1])
-  if (branch.length === 1) return `Your share was ${mine} of ${formatNumber(first.total)}. ${turned ?? KEPT_ALL}`
+  if (branch.length === 1) return turned ?? 'The one coin came your way.'
   const totals = branch.map(({ total }) => formatNumber(total))
   const shown = totals.length > 7 ? [...totals.slice(0, 4), '…', ...totals.slice(-2)] : totals
   const middle = shown.slice(1, -1).map((total) => (total === '…' ? '…' : `of ${total}`))

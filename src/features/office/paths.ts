@@ -4,7 +4,7 @@ export const peoplePath = (organisation: string) => `/office/${organisation}/peo
 export const newDrawPath = (organisation: string) => `/office/${organisation}/draws/new`
 
 /** The steps of a draw's work, each a page. */
-export type Step = '' | 'terms' | 'prizes' | 'entrants' | 'import' | 'seal' | 'history'
+export type Step = '' | 'terms' | 'prizes' | 'entrants' | 'import' | 'seal' | 'history' | 'slips' | 'poster'
 
 export const drawPath = (organisation: string, draw: string, step: Step = '') =>
   `/office/${organisation}/draws/${draw}${step ? `/${step}` : ''}`

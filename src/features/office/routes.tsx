@@ -21,6 +21,8 @@ export const officeRoutes: RouteObject[] = [
           { path: 'import', lazy: () => import('./import/upload-page.tsx') },
           { path: 'import/:import', lazy: () => import('./import/import-page.tsx') },
           { path: 'seal', lazy: () => import('./draw/seal-page.tsx') },
+          { path: 'slips', lazy: () => import('./paper/slips-page.tsx') },
+          { path: 'poster', lazy: () => import('./paper/poster-page.tsx') },
           { path: 'history', lazy: () => import('./draw/history-page.tsx') },
         ],
       },

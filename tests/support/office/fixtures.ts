@@ -99,7 +99,7 @@ export function officeDraw(changes: Partial<OfficeDraw> = {}): OfficeDraw {
       state: false,
     },
     problems: { open: [], seal: [] },
-    mail: { seal: NOTHING, result: NOTHING, notice: NOTHING },
+    mail: { entry: NOTHING, seal: NOTHING, result: NOTHING, notice: NOTHING },
     jobs: [],
     archive: null,
     ...changes,
@@ -118,6 +118,7 @@ export function entrant(id: number, changes: Partial<EntrantRow> = {}): EntrantR
     numbers: null,
     source: 'import',
     addedAt: '2026-09-10T09:30:00Z',
+    announced: 'label',
     version: 1,
     ...changes,
   }

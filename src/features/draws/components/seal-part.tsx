@@ -132,7 +132,7 @@ export function changeWords(changes: SealView['changes']): string {
 export function AreYouInPart({ draw }: { readonly draw: DrawPage }) {
   const over = draw.result !== null
   return (
-    <Part title={over ? 'Were you in it?' : 'Are you in it?'}>
+    <Part title="Are you in it?">
       <div className="measure">
         <p>
           Every entrant with an e-mail address was sent a receipt when the list was sealed, and others can have a slip

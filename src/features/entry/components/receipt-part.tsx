@@ -38,8 +38,8 @@ export function ReceiptPart({ entry, token }: ReceiptPartProps) {
       ) : (
         <>
           <p className="measure">
-            Your {tickets} {entry.tickets === 1 ? 'is' : 'are'} in the sealed list. Your receipt leads from them to the
-            sealed total: add the number beside yours, step by step.
+            {entry.tickets === 1 ? 'Your ticket is' : `Your ${tickets} are`} in the sealed list. Your receipt leads from
+            there to the sealed total: add the number beside yours, step by step.
           </p>
           <Sums receipt={sealed.receipt} />
           <Proof key={sealed.digest} receipt={sealed.receipt} slug={draw.slug} token={token} />

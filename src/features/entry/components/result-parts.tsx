@@ -68,7 +68,9 @@ function footOf(entry: EntryView, walk: EntryWalk) {
     }
   }
   const more = walk.coins - walk.turnedAt
-  const whom = walk.winner.label === null ? 'one other entrant' : walk.winner.label
+  const whom = walk.winner.label ?? 'one other entrant'
+  // A label that ends in an initial brings its own full stop.
+  const stop = whom.endsWith('.') ? '' : '.'
   return {
     apart: true,
     endTitle: 'Turned away',
@@ -77,12 +79,14 @@ function footOf(entry: EntryView, walk: EntryWalk) {
       <p>
         {more === 0 ? (
           <b>
-            {countOf(walk.winner.tickets, 'ticket')} of {whom}.
+            {countOf(walk.winner.tickets, 'ticket')} of {whom}
+            {stop}
           </b>
         ) : (
           <b>
             The walk went on without you, {countOf(more, 'coin', 'coins', true)} more, to{' '}
-            {countOf(walk.winner.tickets, 'ticket')} of {whom}.
+            {countOf(walk.winner.tickets, 'ticket')} of {whom}
+            {stop}
           </b>
         )}{' '}
         Your band of {formatNumber(walk.mine)} ended in the bar above.{' '}

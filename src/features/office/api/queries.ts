@@ -1,4 +1,5 @@
 import { queryOptions, useQueryClient } from '@tanstack/react-query'
+import { listCorrections } from '#shared/schemas/api/entry.ts'
 import {
   getDrawAudit,
   getImport,
@@ -42,7 +43,8 @@ export function drawInterval(draw: OfficeDraw): number | false {
     return BUSY
   if (draw.state === 'sealed' && Date.parse(draw.drawAt) - now < 60_000) return BUSY
   if (draw.jobs.some((job) => job.state === 'waiting')) return SLOW
-  if (draw.mail.seal.queued + draw.mail.result.queued + draw.mail.notice.queued > 0) return BUSY
+  if (draw.mail.entry.queued + draw.mail.seal.queued + draw.mail.result.queued + draw.mail.notice.queued > 0)
+    return BUSY
   return draw.state === 'drawn' || draw.state === 'cancelled' || draw.state === 'failed' ? false : SLOW
 }
 
@@ -69,6 +71,12 @@ export const importQuery = (api: ApiClient, draw: string, id: string) =>
 export function isAtWork(view: Pick<ImportView, 'state'> | undefined): boolean {
   return view?.state === 'reading' || view?.state === 'applying'
 }
+
+export const correctionsQuery = (api: ApiClient, draw: string, page: number) =>
+  queryOptions({
+    queryKey: ['office', 'draw', draw, 'corrections', page],
+    queryFn: () => api.call(listCorrections, { params: { draw }, query: { page } }),
+  })
 
 export const sealSummaryQuery = (api: ApiClient, draw: string) =>
   queryOptions({

@@ -6,6 +6,8 @@ import { formatMoment } from '#src/ui/format-time.ts'
 import { Link } from '#src/ui/link.tsx'
 import { Facts, Part } from '#src/ui/page.tsx'
 import { Time } from '#src/ui/time.tsx'
+import { CorrectionsPart } from '../corrections/corrections-part.tsx'
+import { PaperPart } from '../paper/paper-part.tsx'
 import { JOB_STATES, jobTitle } from './job-words.ts'
 import { NextStep } from './next-step.tsx'
 import { RunPart } from './run-part.tsx'
@@ -22,6 +24,8 @@ export function Component() {
       {draw.state === 'draft' ? null : <PublicPart draw={draw} />}
       <MailPart draw={draw} />
       <JobPart draw={draw} />
+      <CorrectionsPart draw={draw} />
+      <PaperPart draw={draw} />
       <WitnessPart draw={draw} />
       <RunPart draw={draw} />
     </>
@@ -57,6 +61,7 @@ function PublicPart({ draw }: { readonly draw: OfficeDraw }) {
 }
 
 const MAILS = [
+  ['entry', 'Private links'],
   ['seal', 'Receipts and seal'],
   ['result', 'Result'],
   ['notice', 'Postponed, cancelled'],

@@ -11,6 +11,7 @@ import { Notice } from '#src/ui/notice.tsx'
 import { Facts } from '#src/ui/page.tsx'
 import { Time } from '#src/ui/time.tsx'
 import { entrantsQuery } from '../api/queries.ts'
+import { EntrantAccess } from './entrant-access.tsx'
 import { EntrantFields, entrantFrom, typedOver } from './entrant-fields.tsx'
 
 interface EntrantPanelProps {
@@ -18,6 +19,8 @@ interface EntrantPanelProps {
   readonly timeZone: string
   readonly row: EntrantRow
   readonly mayChange: boolean
+  /** Whether whoever reads may have links sent and slips printed. */
+  readonly mayWrite: boolean
   /** Set when something else was asked for while words typed here are not saved. */
   readonly held: boolean
   readonly onTyped: (typed: boolean) => void
@@ -25,8 +28,14 @@ interface EntrantPanelProps {
   readonly onClose: (words: string) => void
 }
 
+/** What an entrant chose on their private page: a label typed here waits behind it. */
+const CHOSEN = {
+  initials: 'Chose on their private page to be announced by initials: that stands, whatever is typed above.',
+  code: 'Chose on their private page to be announced by their code alone: that stands, whatever is typed above.',
+} as const
+
 /** One entrant whole, under their row: read, change, take out. */
-export function EntrantPanel({ draw, timeZone, row, mayChange, held, onTyped, onClose }: EntrantPanelProps) {
+export function EntrantPanel({ draw, timeZone, row, mayChange, mayWrite, held, onTyped, onClose }: EntrantPanelProps) {
   const [takingOut, setTakingOut] = useState(false)
   return (
     <div className="panel-form">
@@ -64,8 +73,10 @@ export function EntrantPanel({ draw, timeZone, row, mayChange, held, onTyped, on
       ) : (
         <p className="note mt-unit-2">
           Code {row.code}. {capitalise(row.source)}, <Time at={row.addedAt} timeZone={timeZone} />.
+          {row.announced === 'label' ? null : ` ${CHOSEN[row.announced]}`}
         </p>
       )}
+      {takingOut ? null : <EntrantAccess draw={draw} row={row} mayWrite={mayWrite} />}
       {mayChange ? null : (
         <p className="mt-unit">
           <Button small quiet onClick={() => onClose('')}>

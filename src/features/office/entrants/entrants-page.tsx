@@ -174,6 +174,7 @@ function List() {
                     timeZone={draw.timeZone}
                     row={row}
                     mayChange={mayChange}
+                    mayWrite={draw.organisation.state !== 'suspended'}
                     held={held}
                     onTyped={(now) => {
                       setTyped(now)
