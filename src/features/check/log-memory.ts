@@ -9,10 +9,16 @@ export function rememberedHead(): string | null {
   }
 }
 
+/** Another tab may have come further meanwhile: a shorter log never takes the place of a longer one. */
 export function rememberHead(note: string): void {
+  const kept = rememberedHead()
+  if (kept !== null && originOf(kept) === originOf(note) && sizeOf(kept) >= sizeOf(note)) return
   try {
     localStorage.setItem(LOG_MEMORY, note)
   } catch {
     // A private window, or storage that is full: the next check then compares with the archive only.
   }
 }
+
+const originOf = (note: string) => note.split('\n')[0]
+const sizeOf = (note: string) => Number(note.split('\n')[1])

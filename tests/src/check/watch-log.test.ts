@@ -95,6 +95,14 @@ describe('the log beside what was seen of it', () => {
     expect(await watch(13, null, mute)).toMatchObject({ evidence: [], remember: null, lines: [{ alarm: false }] })
   })
 
+  it('takes a site that knows of no proof for forked', async () => {
+    const without: typeof fetch = (address) =>
+      String(address).includes('checkpoint')
+        ? site(honest, 40)(address)
+        : Promise.resolve(new Response('', { status: 404 }))
+    expect((await watch(13, null, without)).lines).toEqual([{ alarm: true, words: expect.stringContaining('forked') }])
+  })
+
   it('takes a proof that is none for a fork', async () => {
     const junk: typeof fetch = (address) =>
       String(address).includes('checkpoint')
