@@ -1,6 +1,7 @@
 import { cpus } from 'node:os'
 import { parseArgs } from 'node:util'
 import { browserSection } from '#server/cli/bench/browser-section.ts'
+import { oddsSection } from '#server/cli/bench/odds-section.ts'
 import { rehearsalSection } from '#server/cli/bench/rehearsal-section.ts'
 import { type BenchSection, processorClock, wallClock } from '#server/cli/bench/report.ts'
 import { serverSection } from '#server/cli/bench/server.ts'
@@ -15,6 +16,7 @@ const sizes = (values.sizes ?? '10000,100000,1000000').split(',').map(Number)
 const clock = values['processor-time'] ? processorClock : wallClock
 const sections: readonly BenchSection[] = [
   rehearsalSection(sizes, clock),
+  oddsSection(Math.max(...sizes), clock),
   browserSection(Math.max(...sizes)),
   serverSection,
 ]

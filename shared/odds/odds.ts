@@ -47,6 +47,8 @@ export interface Odds {
 const DIGITS = 9
 /** Where the enumeration is worth its while: sets of entrants to go through, and factors of a binomial. */
 const MOST_SETS = 600
+/** Two sets at least for each group. */
+const MOST_GROUPS = 10
 const MOST_FACTORS = 60
 
 /**
@@ -71,13 +73,11 @@ export function* oddsOf(list: TicketList, terms: OddsTerms): Generator<void, Odd
         enumerateHypergeometric(total, tickets, count, MOST_FACTORS),
       )
     }
-    const others = { groups: place < 0 ? list.groups : without(list, place) }
     const entrants = place < 0 ? list.entrants : list.entrants - 1
-    return present(
-      place < 0 ? run.joining(tickets) : (run.held[place] as number),
-      count > entrants,
-      count > entrants ? null : enumerateSuccessive(others, tickets, count, MOST_SETS),
-    )
+    const value = place < 0 ? run.joining(tickets) : (run.held[place] as number)
+    if (count > entrants || list.groups.length > MOST_GROUPS) return present(value, count > entrants, null)
+    const others = { groups: place < 0 ? list.groups : without(list, place) }
+    return present(value, false, enumerateSuccessive(others, tickets, count, MOST_SETS))
   }
   const at = (tickets: number, place: number): TicketOdds => {
     const total = place < 0 ? list.tickets + tickets : list.tickets

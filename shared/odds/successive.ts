@@ -39,7 +39,7 @@ export interface SuccessiveChances {
  *
  * Cost: (distinct counts) x (about 40 nodes) x (10 to 30 points) complex steps, whatever the number of entrants and
  * nearly whatever the number of picks: milliseconds for a few dozen counts. The worst case is a list in which everybody
- * holds a count of their own: about half a minute for 10^6 entrants (`npm run bench -- odds`). It yields often, so that a server can
+ * holds a count of their own: 15 to 30 seconds for 10^6 entrants (`npm run bench -- odds`). It yields often, so that a server can
  * run it between its requests.
  *
  * Requires picks >= 0 and a list of at least one entrant.

@@ -338,3 +338,26 @@ describe('the state for the browser', () => {
     expect(() => JSON.parse(document.getElementById('evenpenny-state')?.textContent ?? '') as unknown).not.toThrow()
   })
 })
+
+describe('how it works', () => {
+  it('says whether the place in the list mattered, and how little a few draws can show', async () => {
+    const { main } = await get('/how-it-works')
+    expect(main).toContain('12 draws with 140 picks: on average 48.6 % of the way down.')
+    expect(main).toContain('in about 56 of 100 cases (z = −0.59, p = 0.5552). That is nothing out of the ordinary.')
+    expect(main).toContain('With so few picks only a gross lean could show.')
+  })
+  it('calls a lean out, and says nothing of few picks where there are many', async () => {
+    const api = fixtureClient()
+    const order = { mean: 0.56, z: 3.95, p: 0.0000775 }
+    const leaning: ApiClient = {
+      call: (endpoint, input) =>
+        endpoint.name === 'getStatistics'
+          ? Promise.resolve({ at: '2026-06-17T17:00:00Z', draws: 300, picks: 5000, order } as never)
+          : api.call(endpoint, input),
+    }
+    const { main } = await get('/how-it-works', leaning)
+    expect(main).toContain('less than once in 1,000 cases')
+    expect(main).toContain('whoever runs this site has to look into it')
+    expect(main).not.toContain('With so few picks')
+  })
+})

@@ -20,6 +20,7 @@ export const endpointRules: Readonly<Record<string, Rule>> = {
   getDraw: visit,
   getPick: visit,
   getDrawOdds: visit,
+  getStatistics: visit,
   listOrganisations: visit,
   getOrganisation: visit,
   getLog: visit,

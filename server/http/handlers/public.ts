@@ -4,6 +4,7 @@ import * as cards from '#server/store/queries/draw-cards.ts'
 import * as drawPages from '#server/store/queries/draw-page.ts'
 import * as log from '#server/store/queries/log.ts'
 import { getDrawOdds } from '#server/store/queries/odds.ts'
+import { getStatistics } from '#server/store/queries/statistics.ts'
 import * as organisations from '#server/store/queries/organisations.ts'
 import { getSiteKeys } from '#server/store/queries/site-keys.ts'
 import { getSiteKeys as getSiteKeysEndpoint } from '#shared/schemas/api/site-keys.ts'
@@ -21,6 +22,7 @@ export function publicHandlers({ services }: HandlerParts): Handled[] {
     handle(api.getDrawOdds, async (_context, { params, query }) =>
       found(await getDrawOdds(services, { ...params, ...query })),
     ),
+    handle(api.getStatistics, () => getStatistics(services)),
     handle(api.listOrganisations, (_context, { query }) => organisations.listOrganisations(db, query)),
     handle(api.getOrganisation, async (_context, { params }) =>
       found(await organisations.getOrganisation(db, params.slug)),

@@ -1,6 +1,7 @@
 import { z } from 'zod'
 import type { Endpoint } from '../endpoint.ts'
 export { getDrawOdds } from './odds.ts'
+export { getStatistics } from './statistics.ts'
 import { drawState, empty, hex32, instant, money, page, paged, rule, slug, totalTickets } from '../values.ts'
 
 /** One draw in a list. */

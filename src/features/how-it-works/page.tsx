@@ -11,13 +11,16 @@ import { Part, Title } from '#src/ui/page.tsx'
 import { ENTRANTS, everyWay, exampleWalk } from '#src/features/ladder/example.ts'
 import { load } from '#src/lib/loading.ts'
 import { siteKeysQuery } from './api/get-site-keys.ts'
+import { statisticsQuery } from './api/get-statistics.ts'
 import { KeysPart } from './keys-part.tsx'
+import { OrderPart } from './order-part.tsx'
 
 const LEAD =
   'First the list is sealed, then a random number comes into the world, then coins decide. The order is the point: nobody who could change the list could know the number, and nobody who knew the number could change the list.'
 
-/** The page stands without its keys. */
+/** The page stands without its keys and figures. */
 export async function loader(args: LoaderFunctionArgs) {
+  await load(args, statisticsQuery).catch(() => null)
   await load(args, siteKeysQuery).catch(() => null)
   return null
 }
@@ -32,6 +35,7 @@ export function Component() {
       <OneWalk />
       <TossedByHand />
       <Odds />
+      <OrderPart />
       <WhatIsShown />
       <KeysPart />
       <Cautions />

@@ -62,6 +62,7 @@ const TABLE: Record<string, readonly [keyof typeof WHO, number]> = {
   'GET /api/draws/:slug': ['everybody', 200],
   'GET /api/draws/:slug/picks/:pick': ['everybody', 404],
   'GET /api/draws/:slug/odds': ['everybody', 200],
+  'GET /api/statistics': ['everybody', 200],
   'GET /api/organisations': ['everybody', 200],
   'GET /api/organisations/:slug': ['everybody', 200],
   'GET /api/site-keys': ['everybody', 200],

@@ -75,6 +75,12 @@ export function fixtureClient(draws: readonly DrawPage[] = allDraws()): ApiClien
       if (!page) throw missing('This draw has no such pick.')
       return page
     },
+    getStatistics: () => ({
+      at: '2026-06-17T17:00:00Z',
+      draws: 12,
+      picks: 140,
+      order: { mean: 0.4857, z: -0.59, p: 0.5552 },
+    }),
     listOrganisations: () => {
       const { slug, name, about, registration, demo, suspended, draws: own } = organisationPage()
       return {
