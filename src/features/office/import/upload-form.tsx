@@ -38,16 +38,18 @@ export function UploadForm({ draw, onDone }: UploadFormProps) {
     setFault(fileProblem(chosen))
   }
   const send = async () => {
-    if (!file) {
-      setFault('Choose a CSV file.')
+    // A file may have been chosen before the page's code was there to hear of it.
+    const chosen = file ?? input.current?.files?.[0] ?? null
+    const problem = chosen ? fileProblem(chosen) : 'Choose a CSV file.'
+    if (!chosen || problem) {
+      setFault(problem)
       input.current?.focus()
       return
     }
-    if (fault) return input.current?.focus()
     setFailure(null)
     setStopped(false)
-    setSending({ sent: 0, total: file.size })
-    const started = uploadFile(uploadImport, { params: { draw } }, file, (sent, total) => setSending({ sent, total }))
+    setSending({ sent: 0, total: chosen.size })
+    const started = uploadFile(uploadImport, { params: { draw } }, chosen, (sent, total) => setSending({ sent, total }))
     upload.current = started
     try {
       onDone(await started.answer)
