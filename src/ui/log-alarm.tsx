@@ -14,7 +14,7 @@ export function LogAlarm({ title, words, evidence }: LogAlarmProps) {
     <Notice title={title} fault>
       <p>{words}</p>
       {evidence.map((note, index) => (
-        <div key={index}>
+        <div key={index} className="mt-unit">
           <p>{evidence.length === 1 ? 'The checkpoint:' : index === 0 ? 'Seen before:' : 'Shown now:'}</p>
           <code className="command" tabIndex={0}>
             {note}

@@ -42,14 +42,14 @@ export function Component() {
       <Part title="Entries" note={<p>{countOf(data.total, 'entry', 'entries')}. Times are UTC.</p>}>
         <GoToEntry asked={params.get('at') ?? ''} />
         {missing ? (
-          <p>
+          <p className="mt-unit">
             There is no entry {formatNumber(place.at ?? 0)} yet: the newest is entry {formatNumber(data.total - 1)}.
           </p>
         ) : null}
         {data.items.length === 0 ? (
           <Empty title={data.total === 0 ? 'Nothing has happened yet.' : 'There is no such page of the log.'} />
         ) : (
-          <ol className="account">
+          <ol className="account mt-unit-2">
             {data.items.map((line) => (
               <Entry key={line.index} line={line} asked={line.index === place.at} />
             ))}

@@ -38,7 +38,7 @@ export function StandingPart({ state }: { readonly state: LogState }) {
         )}
       </div>
       {kept ? (
-        <p className="note">
+        <p className="note mt-unit">
           The newest checkpoint under the lock of the archive has {formatNumber(kept.size)}{' '}
           {kept.size === 1 ? 'entry' : 'entries'}, signed on {formatMoment(kept.at, 'UTC')}.
         </p>
@@ -59,7 +59,7 @@ export function CheckLogPart({ head }: { readonly head: LogHead }) {
           The entries are the leaves of one tree of hashes (RFC 9162). Its root changes with any change of any entry, so
           whoever remembers one root can prove later that everything before it is still there, unchanged.
         </p>
-        <ol>
+        <ul className="dashes mt-unit">
           <li>
             Ask for the checkpoint: the name of the log, its size, its root, and the site’s signature (a C2SP signed
             note). Keep it.
@@ -72,9 +72,9 @@ export function CheckLogPart({ head }: { readonly head: LogHead }) {
             An archive holds what the log says of its draw, with the paths to a checkpoint. Compare that checkpoint with
             the ones that you and others remember.
           </li>
-        </ol>
+        </ul>
       </div>
-      <code className="command" tabIndex={0}>
+      <code className="command mt-unit" tabIndex={0}>
         {ask}
         {'\n'}
         {prove}
@@ -82,12 +82,12 @@ export function CheckLogPart({ head }: { readonly head: LogHead }) {
       <p className="mt-unit">
         <CopyButton value={`${ask}\n${prove}`} what="the commands" text="Copy the commands" />
       </p>
-      <p>
+      <p className="mt-unit">
         <ButtonLink plain to="/log/checkpoint.txt" quiet>
           See the checkpoint
         </ButtonLink>
       </p>
-      <p className="measure">
+      <p className="measure mt-unit-2">
         What the log cannot show: whether the site shows everybody the same log. That takes people who compare their
         checkpoints, or witnesses who sign them.
       </p>
