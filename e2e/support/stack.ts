@@ -3,6 +3,7 @@ export interface StackAddresses {
   readonly site: string
   readonly mailPage: string
   readonly beacon: string
+  readonly timestamp: string
   readonly s3: string
   readonly smtp: string
   /** For looking at what a page cannot show; specs change nothing through it. */

@@ -69,6 +69,7 @@ export async function browserStack(env) {
       site: siteAddress(ports),
       mailPage: local(ports.mailPage),
       beacon: local(ports.beacon),
+      timestamp: local(ports.timestamp),
       s3: local(ports.s3),
       smtp: `smtp://127.0.0.1:${ports.smtp}`,
       databaseUrl,

@@ -29,6 +29,43 @@ const summary = {
   replaces: null,
 }
 
+describe('a seal that waits for its timestamp', () => {
+  const sealing = {
+    replaces: null,
+    drawAt: '2026-10-03T19:00:00Z',
+    madeAt: '2026-10-02T18:00:00Z',
+    tries: 3,
+    triedAt: '2026-10-02T18:00:20Z',
+    detail: 'https://timestamps.example: It did not answer within 10 s.',
+    until: '2026-10-03T18:59:30Z',
+  }
+  const base = { getSession: () => session(), getSealSummary: () => summary }
+  it('is told with what it waits for and until when, and there is nothing to seal', async () => {
+    const api = fakeApi({ ...base, getOfficeDraw: () => officeDraw({ state: 'closed', sealing }) })
+    await openPage(`${DRAW}/seal`, api)
+    const told = (await screen.findByText('The list is being sealed')).closest('.notice')
+    expect(told?.textContent).toContain('as soon as an outside authority has put a timestamp on it')
+    expect(told?.textContent).toMatch(/3 tries so far gave no timestamp.*until Saturday 3 October 2026 at 19:59:30/)
+    expect(told?.textContent).toContain('It did not answer within 10 s.')
+    expect(screen.queryByRole('button', { name: 'Seal the list' })).toBeNull()
+  })
+  it('says nothing of tries while the first one is under way, and that the old seal stands where there is one', async () => {
+    const waiting = { ...sealing, tries: 0, triedAt: null, detail: '', replaces: DIGEST }
+    const draw = officeDraw({ state: 'sealed', sealDigest: DIGEST, sealedAt: '2026-10-02T17:00:00Z', sealing: waiting })
+    await openPage(`${DRAW}/seal`, fakeApi({ ...base, getOfficeDraw: () => draw }))
+    const told = (await screen.findByText('The new seal is being made')).closest('.notice')
+    expect(told?.textContent).toContain('Until then the seal before it stands')
+    expect(told?.textContent).not.toContain('tries')
+  })
+  it('leaves the promoter free to choose another course, which discards it', async () => {
+    const draw = officeDraw({ state: 'closed', sealing, may: { ...officeDraw().may, reopen: true, cancel: true } })
+    await openPage(DRAW, fakeApi({ ...base, getOfficeDraw: () => draw }))
+    expect(await screen.findByText('Whatever you choose here discards the seal that waits.')).toBeDefined()
+    expect(screen.getByRole('button', { name: 'Cancel the draw' })).toBeDefined()
+    expect(screen.getByText('The list is being sealed. There is nothing to do meanwhile.')).toBeDefined()
+  })
+})
+
 describe('sealing', () => {
   const closed = officeDraw({ state: 'closed' })
   const sealed = officeDraw({ state: 'sealed', sealDigest: DIGEST, sealedAt: '2026-10-02T18:00:00Z' })
