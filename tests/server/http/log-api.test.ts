@@ -130,6 +130,22 @@ describe('the log over the network', () => {
     }
   })
 
+  it('is open to pages of other sites; what never changes may be kept, and the rest is asked for anew', async () => {
+    for (const [path, kept] of [
+      ['checkpoint', false],
+      ['entries?from=0', false],
+      ['inclusion?index=0&size=1', true],
+      ['consistency?first=1&second=2', true],
+    ] as const) {
+      const { headers } = await get(`/api/v1/log/${path}`).set('Origin', 'https://elsewhere.example').expect(200)
+      expect(headers['access-control-allow-origin'], path).toBe('*')
+      expect(String(headers['cache-control']).includes('immutable'), path).toBe(kept)
+      expect(headers['set-cookie'], path).toBeUndefined()
+    }
+    const { headers } = await get('/api/v1/log/inclusion?index=0&size=100000').expect(404)
+    expect(String(headers['cache-control'])).not.toContain('immutable')
+  })
+
   it('proves the entries of one draw to the head, and of no draft', async () => {
     const { rows } = await site.database.pool.query(`select slug from draw where title = 'Spring hampers'`)
     const { body } = await get(`/api/draws/${rows[0].slug}/log`).expect(200)
