@@ -186,17 +186,23 @@ describe('certificates that may not sign timestamps', () => {
     if (answer.kind !== 'granted') throw new Error('refused')
     return answer.token.content
   }
-  const found = (options: AuthorityOptions) => {
+  const found = (options: AuthorityOptions, named = true) => {
     const authority = makeOpensslAuthority('p256', options)
     try {
       const trusted = certificatesOfPem(authority.root)
-      return verifyTimestamp(authority.signAnyway(info()), { imprint: IMPRINT, trusted })
+      return verifyTimestamp(authority.signAnyway(info(), { named }), { imprint: IMPRINT, trusted })
     } finally {
       authority.close()
     }
   }
   it('one that is for timestamps passes, signed in the same way', () => {
     expect(found({})).toMatchObject({ ok: true, value: { trustedBy: { name: 'Throw-away root' } } })
+  })
+  it('one that the signed attributes do not name is refused', () => {
+    expect(found({}, false)).toMatchObject({
+      ok: false,
+      error: { code: 'timestamp-attributes', at: 'signingCertificate' },
+    })
   })
   it.each<AuthorityOptions>([
     { extensions: 'not-critical' },

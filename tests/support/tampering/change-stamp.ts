@@ -29,11 +29,13 @@ export function changeStamp({ flip, bytes }: StampChange, response: Uint8Array):
     }
     case 'large':
       return der(TAG.sequence, new Uint8Array(65_530))
+    case 'unnamed':
     case 'by-a-stranger': {
-      // Signed with the key of a certificate that is for something else besides timestamps.
-      const authority = makeOpensslAuthority('p256', { extensions: 'two-purposes' })
+      // With the key of a certificate that is for something else besides timestamps; or for them, but not named.
+      const named = bytes === 'by-a-stranger'
+      const authority = makeOpensslAuthority('p256', { extensions: named ? 'two-purposes' : 'signer' })
       try {
-        return authority.signAnyway(granted(response).content)
+        return authority.signAnyway(granted(response).content, { named })
       } finally {
         authority.close()
       }

@@ -79,7 +79,9 @@ const stages = z.strictObject({
       /** Changes one bit of what is named. */
       flip: z.enum(['signature', 'content', 'attributes', 'certificate', 'status']).optional(),
       /** Answers as an authority that gives none, or with other bytes. */
-      bytes: z.enum(['refused', 'empty', 'cut', 'longer', 'indefinite', 'nested', 'large', 'by-a-stranger']).optional(),
+      bytes: z
+        .enum(['refused', 'empty', 'cut', 'longer', 'indefinite', 'nested', 'large', 'by-a-stranger', 'unnamed'])
+        .optional(),
     })
     .optional(),
   /** Other bytes in the place of the timestamp, hex. */

@@ -17,8 +17,11 @@ export interface OpensslAuthority {
   reply(data: Uint8Array, options?: { readonly certificates?: boolean }): Uint8Array
   /** A TimeStampResp to a request of ours. */
   answer(request: Uint8Array): Uint8Array
-  /** Signs a TSTInfo as CMS, whatever the certificate is for, which \`ts -reply\` would not do. */
-  signAnyway(info: Uint8Array): Uint8Array
+  /**
+   * Signs a TSTInfo as CMS, whatever the certificate is for, which `ts -reply` would not do; `named: false` leaves out the
+   * attribute that names the certificate.
+   */
+  signAnyway(info: Uint8Array, options?: { readonly named?: boolean }): Uint8Array
   close(): void
 }
 
@@ -115,9 +118,10 @@ export function makeOpensslAuthority(key: AuthorityKey, options: AuthorityOption
       run('ts', '-query', '-data', 'data', '-sha256', ...(certificates ? ['-cert'] : []), '-out', 'q2.tsq')
       return answer(readFileSync(join(folder, 'q2.tsq')))
     },
-    signAnyway(info) {
+    signAnyway(info, { named: naming = true } = {}) {
       writeFileSync(join(folder, 'info'), info)
-      const content = ['-binary', '-nodetach', '-econtent_type', '1.2.840.113549.1.9.16.1.4', '-cades', '-nosmimecap']
+      const content = ['-binary', '-nodetach', '-econtent_type', '1.2.840.113549.1.9.16.1.4', '-nosmimecap']
+      if (naming) content.push('-cades')
       const signer = ['-signer', 'signer.pem', '-inkey', 'signer.key', '-certfile', 'middle.pem', '-md', 'sha256']
       run('cms', '-sign', '-in', 'info', ...content, ...signer, '-outform', 'DER', '-out', 'token')
       const granted = der(TAG.sequence, derInteger(Uint8Array.of(0)))

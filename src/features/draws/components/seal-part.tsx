@@ -34,8 +34,10 @@ export function SealPart({ draw }: { readonly draw: DrawPage }) {
           </div>
           {seal.timestamp ? (
             <p className="mt-unit">
-              Timestamped by {seal.timestamp.authority} on {formatMoment(seal.timestamp.at, draw.timeZone, true)}. That
-              is somebody other than this site: the seal was there by then.
+              Timestamped by {seal.timestamp.authority} on {formatMoment(seal.timestamp.at, draw.timeZone, true)}.{' '}
+              {seal.beacon?.network === 'development'
+                ? 'This is the authority for tests, whose key everybody knows: it shows nothing.'
+                : 'That is somebody other than this site: the seal was there by then.'}
             </p>
           ) : null}
           <div className="note mt-unit">
