@@ -13,12 +13,10 @@ import { openPage } from '#tests/support/office/render.tsx'
 beforeEach(() => vi.stubGlobal('scrollTo', () => {}))
 afterEach(cleanup)
 
-interface Asked {
-  readonly query: Record<string, number | undefined>
-}
+type Asked = Readonly<Record<string, number | undefined>>
 
 /** Answers as the server does, over a list of 19 tickets or the one that is expected. */
-function oddsOf({ query }: Asked): OddsView {
+function oddsOf(query: Asked): OddsView {
   const { tickets: asked, prizes = 1, entrants, allTickets } = query
   const expected = entrants !== undefined && allTickets !== undefined
   const list = listOfCounts(expected ? new Array<number>(entrants).fill(allTickets / entrants) : [12, 5, 2])
@@ -31,7 +29,7 @@ const answers = (draw: ReturnType<typeof officeDraw>, role: 'promoter' | 'organi
   fakeApi({
     getSession: () => session(role),
     getOfficeDraw: () => draw,
-    getOfficeOdds: (input: never) => oddsOf(input),
+    getOfficeOdds: ({ query }) => oddsOf(query),
   })
 const section = async () => (await screen.findByRole('heading', { name: 'What tickets give' })).closest('section')!
 const cells = (within: HTMLElement) =>
